@@ -1,0 +1,1 @@
+"""Pure filter mathematics: polar roots, section kinds, chains, responses, rings, hearing numbers."""

@@ -1,0 +1,1 @@
+"""The only opener of files: presets, clips, atomic writes, bundled material."""

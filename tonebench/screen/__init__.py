@@ -1,0 +1,1 @@
+"""The Textual application: charts, panels, keys and all wording of the screen."""

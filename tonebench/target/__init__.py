@@ -1,0 +1,1 @@
+"""Finite arithmetic: formats, rounding, structures and findings."""
