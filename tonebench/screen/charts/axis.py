@@ -15,6 +15,8 @@ from tonebench.screen.charts.marks import Ink, MarkSet
 from tonebench.screen.charts.words import frequency_label
 
 if TYPE_CHECKING:
+    from collections.abc import Collection
+
     from numpy.typing import NDArray
 
     from tonebench.screen.charts.raster import Raster
@@ -95,7 +97,7 @@ class FrequencyAxis:
         return self.plot_right + (2 if self.gutter_columns > 3 else 1)
 
     def column(self, frequency_hz: float) -> int:
-        """Return the column of a frequency: in a gutter for 0 and Nyquist, else in the plot, at its edge if out of range."""
+        """Return the column of a frequency: a gutter for 0 and Nyquist, else the plot (its edge if out of range)."""
         if frequency_hz <= 0:
             return self.zero_column
         if frequency_hz >= self.nyquist_hz * (1 - 1e-9):
@@ -128,12 +130,13 @@ class FrequencyAxis:
             for value in nice_frequencies_hz(self.low_hz, self.high_hz)
         ]
 
-    def draw_grid(self, raster: "Raster", top: int, height: int) -> None:
-        """Draw the gutters' lines and one faint dot per row at the nicest frequencies."""
-        for row in range(top, top + height):
+    def draw_grid(self, raster: "Raster", rows: int, plain_rows: "Collection[int]" = ()) -> None:
+        """Draw the gutters' lines and a faint dot at the nicest frequencies in each row but the plain ones."""
+        inner = [tick for tick in self.spaced_ticks(4) if self.plot_left < tick.cell < self.plot_right - 1]
+        for row in range(rows):
             raster.put(self.plot_left - 1, row, "│", Ink.GRID, is_reserved=False)
             raster.put(self.plot_right, row, "│", Ink.GRID, is_reserved=False)
-            for tick in self.spaced_ticks(4):
+            for tick in inner if row not in plain_rows else ():
                 raster.put(tick.cell, row, "·", Ink.GRID, is_reserved=False)
 
     def spaced_ticks(self, least: int) -> list[Tick]:
@@ -160,7 +163,7 @@ class FrequencyAxis:
         return min(cells - 1, max(0, math.floor(place * cells)))
 
     def _at(self, part: float) -> float:
-        return self.low_hz * (self.high_hz / self.low_hz) ** part
+        return self.low_hz * math.pow(self.high_hz / self.low_hz, part)
 
 
 def default_axis(width: int, sample_rate_hz: float) -> FrequencyAxis:
@@ -195,7 +198,7 @@ def nice_step(least: float) -> float:
 
 
 def decibel_ticks(limits_db: tuple[float, float], rows: int) -> list[Tick]:
-    """Return the ticks of a decibel axis: multiples of one nice step, 0 dB among them, two rows apart or more.
+    """Return the ticks of a decibel axis: multiples of one nice step, 0 dB among them, some two rows apart.
 
     Parameters
     ----------
@@ -210,8 +213,8 @@ def decibel_ticks(limits_db: tuple[float, float], rows: int) -> list[Tick]:
         From the top down; cell is the row.
     """
     low_db, high_db = limits_db
-    least = (high_db - low_db) / max(1.0, rows / 2)
-    step = next((nice for nice in (1, 2, 3, 6, 12, 24, 48) if nice >= least), 96)
+    least = (high_db - low_db) / max(1.0, rows / 1.7)
+    step = next((nice for nice in (1, 2, 3, 6, 12, 18, 24, 30, 36, 48) if nice >= least), 96)
     first, last = math.ceil(low_db / step), math.floor(high_db / step)
     ticks = []
     for index in range(last, first - 1, -1):

@@ -13,6 +13,8 @@ from tonebench.screen.charts.marks import Dash, Ink, MarkSet
 from tonebench.screen.charts.raster import Area, Raster
 
 if TYPE_CHECKING:
+    from collections.abc import Iterable
+
     from numpy.typing import NDArray
 
 # Far below anything drawn, yet finite: an exact zero of a response is -inf dB, and -inf cannot be interpolated.
@@ -64,7 +66,7 @@ def column_spans(x: "NDArray[np.float64]", y: "NDArray[np.float64]", edges: "NDA
     return Spans(low, high)
 
 
-def draw_spans(raster: Raster, area: Area, spans: Spans, limits: tuple[float, float], ink: Ink, dash: Dash) -> None:
+def draw_spans(raster: Raster, area: Area, spans: Spans, limits: tuple[float, float], look: tuple[Ink, Dash]) -> None:
     """Draw a curve given by its spans.
 
     Parameters
@@ -77,8 +79,8 @@ def draw_spans(raster: Raster, area: Area, spans: Spans, limits: tuple[float, fl
         The curve.
     limits : tuple of float
         Values at the lower and upper limit of the area; the curve is cut there.
-    ink, dash
-        How it looks.
+    look : tuple of Ink and Dash
+        Style and interruption of the curve.
     """
     marks = raster.marks
     dots = area.height * marks.dot_rows
@@ -91,12 +93,11 @@ def draw_spans(raster: Raster, area: Area, spans: Spans, limits: tuple[float, fl
     last = np.where(is_seen, np.clip(np.nan_to_num(last), 0, dots - 1), 0)
     rows = np.arange(dots)[:, None]
     lit = (rows >= first) & (rows <= last)
+    ink, dash = look
     raster.dots(area, lit & _dash_dots(marks, dash, first, last, rows), ink, dash)
 
 
-def dot_row(
-    values: "NDArray[np.float64]", limits: tuple[float, float], dots: int
-) -> "NDArray[np.float64]":
+def dot_row(values: "NDArray[np.float64]", limits: tuple[float, float], dots: int) -> "NDArray[np.float64]":
     """Row of dots, counted from the top, that holds each value; not limited to the area."""
     low, high = limits
     place = np.floor((high - values) / (high - low) * dots)
@@ -121,27 +122,26 @@ def _dash_dots(
     return kept
 
 
-def draw_line(raster: Raster, start: tuple[int, int], end: tuple[int, int], ink: Ink) -> None:
-    """Draw a sparse straight line between the centres of two cells, over free blank cells only.
+def draw_lines(raster: Raster, lines: "Iterable[tuple[tuple[int, int], tuple[int, int]]]", ink: Ink) -> None:
+    """Draw sparse straight lines between the centres of cells, over blank cells and the grid only.
 
     Parameters
     ----------
     raster : Raster
         To draw into.
-    start, end : tuple of int
-        Column and row of a cell.
+    lines : iterable of pairs of (column, row)
+        First and last cell of each line.
     ink : Ink
-        Of the line.
+        Of the lines.
     """
     down, across = raster.marks.dot_rows, raster.marks.dot_columns
-    ends = np.array([start, end], dtype=float) * (across, down) + ((across - 1) / 2, (down - 1) / 2)
-    steps = int(np.abs(ends[1] - ends[0]).max())
-    if steps == 0 or raster.width == 0 or raster.height == 0:
-        return
-    # Every second dot: a leader is fainter than any curve, without the help of colour.
-    along = np.arange(0, steps + 1, 2)[:, None] / steps
-    points = np.floor(ends[0] + along * (ends[1] - ends[0])).astype(int)
     lit = np.zeros((raster.height * down, raster.width * across), dtype=np.bool_)
-    is_inside = ((points >= 0) & (points < (lit.shape[1], lit.shape[0]))).all(axis=1)
-    lit[points[is_inside, 1], points[is_inside, 0]] = True
-    raster.dots(Area(0, 0, raster.width, raster.height), lit, ink)
+    for start, end in lines:
+        ends = np.array([start, end], dtype=float) * (across, down) + ((across - 1) / 2, (down - 1) / 2)
+        steps = max(1, int(np.abs(ends[1] - ends[0]).max()))
+        # Every second dot: a leader is fainter than any curve, without the help of colour.
+        along = np.arange(0, steps + 1, 2)[:, None] / steps
+        points = np.floor(ends[0] + along * (ends[1] - ends[0])).astype(int)
+        is_inside = ((points >= 0) & (points < (lit.shape[1], lit.shape[0]))).all(axis=1)
+        lit[points[is_inside, 1], points[is_inside, 0]] = True
+    raster.dots(Area(0, 0, raster.width, raster.height), lit, ink, is_faint=True)

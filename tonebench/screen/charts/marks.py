@@ -95,6 +95,15 @@ class MarkSet:
             return self.glyphs
         return np.array([32, ord(dash.letter)], dtype=np.uint32)
 
+    def faint_glyphs(self, ink: Ink) -> "NDArray[np.uint32]":
+        """Code point of each dot pattern for leaders and grid lines."""
+        if self.dot_columns > 1:
+            return self.glyphs
+        letter = ":" if ink is Ink.LEADER else self.spell("·")
+        faint = np.full(len(self.glyphs), ord(letter), dtype=np.uint32)
+        faint[0] = 32
+        return faint
+
     def legend(self, dash: Dash) -> str:
         """One character that stands for a curve in a title."""
         return dash.letter if len(self.glyphs) == 2 else dash.sample

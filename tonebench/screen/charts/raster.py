@@ -5,6 +5,7 @@ refused whole, and curves pass under it, so labels never overlap and are never c
 """
 
 from dataclasses import dataclass
+from itertools import pairwise
 from typing import TYPE_CHECKING, Self
 
 import numpy as np
@@ -87,6 +88,10 @@ class Raster:
         self.is_taken[row, run] = True
         return True
 
+    def reserve(self, area: Area) -> None:
+        """Keep cells from whatever is drawn later."""
+        self.is_taken[area.top : area.top + area.height, area.left : area.left + area.width] = True
+
     def put(self, column: int, row: int, glyph: str, ink: Ink, *, is_reserved: bool = True) -> None:
         """Set one cell unless text or a mark is in it; outside the raster nothing happens."""
         if not self.is_free(column, row):
@@ -96,7 +101,9 @@ class Raster:
         self._patterns[row, column] = 0
         self.is_taken[row, column] = is_reserved
 
-    def dots(self, area: Area, lit: "NDArray[np.bool_]", ink: Ink, dash: Dash = SOLID) -> None:
+    def dots(
+        self, area: Area, lit: "NDArray[np.bool_]", ink: Ink, dash: Dash = SOLID, *, is_faint: bool = False
+    ) -> None:
         """Draw dots over an area, under its text.
 
         Parameters
@@ -109,15 +116,21 @@ class Raster:
             Of every cell touched.
         dash : Dash
             Chooses the letter where a cell is one dot.
+        is_faint : bool
+            Draw over blank cells and the grid only, and with a light letter where dots are large.
         """
         down, across = self.marks.dot_rows, self.marks.dot_columns
         cells = lit.reshape(area.height, down, area.width, across)
         patterns = np.einsum("rdca,da->rc", cells, self.marks.weights, dtype=np.uint8, casting="unsafe")
         window = (slice(area.top, area.top + area.height), slice(area.left, area.left + area.width))
         is_drawn = (patterns > 0) & ~self.is_taken[window]
+        if is_faint:
+            under = self.inks[window]
+            is_drawn &= (self.codes[window] == BLANK) | (under == Ink.GRID) | (under == ink)
         joined = np.where(is_drawn, patterns | self._patterns[window], self._patterns[window])
         self._patterns[window] = joined
-        self.codes[window] = np.where(is_drawn, self.marks.curve_glyphs(dash)[joined], self.codes[window])
+        glyphs = self.marks.faint_glyphs(ink) if is_faint else self.marks.curve_glyphs(dash)
+        self.codes[window] = np.where(is_drawn, glyphs[joined], self.codes[window])
         self.inks[window] = np.where(is_drawn, np.uint8(ink), self.inks[window])
 
     def forget_dots(self) -> None:
@@ -126,7 +139,7 @@ class Raster:
 
     def row_text(self, row: int) -> str:
         """Return the characters of one row."""
-        return self.codes[row].astype("<u4").tobytes().decode("utf-32-le")
+        return bytes(self.codes[row].astype("<u4").data).decode("utf-32-le")
 
     def text_rows(self) -> list[str]:
         """Return the characters of every row, blanks at the right end kept."""
@@ -151,5 +164,5 @@ class Raster:
         starts = np.flatnonzero(np.diff(inks)) + 1
         bounds = [0, *starts.tolist(), self.width]
         text = self.row_text(row)
-        segments = [Segment(text[a:b], styles[inks[a]]) for a, b in zip(bounds[:-1], bounds[1:], strict=True)]
+        segments = [Segment(text[a:b], styles[inks[a]]) for a, b in pairwise(bounds)]
         return Strip(segments, self.width)

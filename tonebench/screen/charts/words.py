@@ -1,6 +1,12 @@
 """Numbers as the charts write them: short, with the unit, never cut."""
 
 import math
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+if TYPE_CHECKING:
+    from tonebench.screen.charts.levels import Curve
 
 
 def frequency_label(frequency_hz: float) -> str:
@@ -46,13 +52,27 @@ def level_label(level_db: float) -> str:
 
 
 def level_text(level_db: float) -> str:
-    """Level in words, to a tenth of a decibel: +1.5 dB, −23.1 dB, minus infinity."""
-    if level_db == -math.inf:
-        return "minus infinity dB"
+    """Level in words, to a tenth of a decibel: +1.5 dB, −23.1 dB, under −200 dB."""
+    if level_db < -200:
+        return "under −200 dB"
     rounded = round(level_db, 1)
     if rounded == 0:
         return "0 dB"
     return f"{rounded:+.1f} dB".replace("-", "−")
+
+
+def describe_curve(curve: "Curve") -> str:
+    """Return highest, lowest and round-frequency levels of a curve in words."""
+    top, bottom = int(np.nanargmax(curve.level_db)), int(np.nanargmin(curve.level_db))
+    parts = [
+        f"highest {level_text(float(curve.level_db[top]))} at {frequency_text(float(curve.frequency_hz[top]))}",
+        f"lowest {level_text(float(curve.level_db[bottom]))} at {frequency_text(float(curve.frequency_hz[bottom]))}",
+    ]
+    for frequency_hz in (31.5, 63, 125, 250, 500, 1000, 2000, 4000, 8000, 16_000):
+        if curve.frequency_hz[0] <= frequency_hz <= curve.frequency_hz[-1]:
+            level = float(np.interp(np.log(frequency_hz), np.log(curve.frequency_hz), curve.level_db))
+            parts.append(f"{level_text(level)} at {frequency_text(frequency_hz)}")
+    return "; ".join(parts)
 
 
 def _two_digits(value: float) -> str:
