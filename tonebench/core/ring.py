@@ -24,7 +24,9 @@ from tonebench.core.roots import PolarPoint, polar_points, root_values
 from tonebench.core.widths import ring_from_radius
 
 AUDIBLE_LEVEL_DB = -60.0  # a ring that starts lower than this under its reference is not judged
-_CONTOUR_POINTS = 96
+_CONTOUR_POINTS = 64
+_CLUSTER_TIME_CONSTANTS = 20.0  # a double pole of +20 dB is 60 dB down after 13
+_CLUSTER_POINTS = 400
 _CLICK_FRAMES = 4096
 
 
@@ -118,85 +120,109 @@ def _mode(
     outermost = max(cluster, key=lambda one: one.point.radius)
     radius, angle = outermost.point.radius, outermost.point.angle_rad
     t60_s = ring_from_radius(radius, chain.sample_rate_hz)
-    click, tone = _levels(chain, realised, cluster, poles)
-    click_db = _decibel(click / reference if reference > 0.0 else 0.0)
-    tone_db = _decibel(tone)
+    if radius >= 1.0:
+        click, tone = _Tail.endless(), _Tail.endless()
+    else:
+        click, tone = _tails(chain, realised, cluster, poles, reference)
     return Ring(
         frequency_hz=angle * chain.sample_rate_hz / (2.0 * math.pi),
         t60_s=t60_s,
         is_growing=radius > 1.0,
-        click_level_db=click_db,
-        tone_level_db=tone_db,
-        click_ring_s=_time_above(click_db, t60_s),
-        tone_ring_s=_time_above(tone_db, t60_s),
+        click_level_db=click.level_db,
+        tone_level_db=tone.level_db,
+        click_ring_s=click.ring_s,
+        tone_ring_s=tone.ring_s,
         identities=tuple(sorted({one.identity for one in cluster})),
     )
 
 
-def _time_above(level_db: float, t60_s: float) -> float:
-    """Return how long a tail that starts at ``level_db`` stays above −60 dB."""
-    above_db = level_db - AUDIBLE_LEVEL_DB
-    if above_db <= 0.0:
-        return 0.0
-    return t60_s * above_db / 60.0
+@dataclass(frozen=True, slots=True)
+class _Tail:
+    """How high a tail starts against its reference, and for how long it stays above −60 dB."""
+
+    level_db: float
+    ring_s: float
+
+    @classmethod
+    def endless(cls) -> "_Tail":
+        return cls(math.inf, math.inf)
+
+    @classmethod
+    def of(cls, envelope: NDArray[np.float64], frames: NDArray[np.float64], t60_s: float, rate_hz: float) -> "_Tail":
+        """Read a tail off its envelope; one pole alone falls in a straight line, which needs only its start."""
+        level_db = _decibel(float(np.max(envelope)))
+        if frames.size == 1:
+            return cls(level_db, t60_s * max(level_db - AUDIBLE_LEVEL_DB, 0.0) / 60.0)
+        above = np.flatnonzero(envelope > 10.0 ** (AUDIBLE_LEVEL_DB / 20.0))
+        return cls(level_db, float(frames[above[-1]]) / rate_hz if above.size else 0.0)
 
 
-def _levels(
-    chain: Chain, realised: Sequence[PoleZero], cluster: list[_Pole], poles: Sequence[_Pole]
-) -> tuple[float, float]:
-    """Return the click envelope and the tone tail at their start, as linear amplitudes.
+def _tails(
+    chain: Chain, realised: Sequence[PoleZero], cluster: list[_Pole], poles: Sequence[_Pole], reference: float
+) -> tuple[_Tail, _Tail]:
+    """Return the tail after a click and the tail after a tone.
 
-    With h[n] = Re(e[n]) and e[n] the mode's complex part (twice the residue sum for a conjugate mode), the click
-    level is the largest |e|. After a real tone of the mode's angle the envelope of the tail starts at
+    With h[n] = Re(e[n]) and e[n] the mode's complex part (twice the residue sum for a conjugate mode), the click's
+    envelope is |e[n]|. After a real tone of the mode's angle the envelope of the tail starts at
     |R·(r/(1 − r) + p·e^{jw}/(1 − p·e^{jw}))|: the tone's two halves e^{±jw} each leave R·p/(e^{±jw} − p).
     """
     outermost = max(cluster, key=lambda one: one.point.radius)
-    if outermost.point.radius >= 1.0:
-        return (math.inf, math.inf)
-    tone = cmath.rect(1.0, outermost.point.angle_rad)
-    centre, spread = _contour(cluster, poles, tone)
-    turned = np.exp(2j * math.pi * (np.arange(_CONTOUR_POINTS) + 0.5) / _CONTOUR_POINTS)
-    z = centre + spread * turned
-    weight = spread * turned / _CONTOUR_POINTS * _transfer(chain, realised, cluster, z)
     is_conjugate = outermost.point.is_pair and 0.0 < outermost.point.angle_rad < math.pi
-    envelope = np.abs((z[None, :] ** (_envelope_frames(cluster)[:, None] - 1)) @ weight)
-    tail = 0j
-    for half in (tone, tone.conjugate()) if is_conjugate else (tone,):
-        tail += complex(np.sum(weight / (half - z)))
-        if abs(half - centre) < spread:  # the tone's own residue, −H, is inside the contour too
-            tail += complex(_transfer(chain, realised, cluster, np.array([half]))[0])
-    return ((2.0 if is_conjugate else 1.0) * float(np.max(envelope)), abs(tail))
+    z, weight = _contours(chain, realised, cluster, poles)
+    frames = _frames(cluster)
+    powers = z[None, :] ** frames[:, None]
+    click = np.abs(powers @ (weight / z)) * (2.0 if is_conjugate else 1.0)
+    tone = cmath.rect(1.0, outermost.point.angle_rad)
+    halves = (tone, tone.conjugate()) if is_conjugate else (tone,)
+    after_tone = np.abs(powers @ sum((weight / (half - z) for half in halves), np.zeros_like(z)))
+    t60_s = ring_from_radius(outermost.point.radius, chain.sample_rate_hz)
+    rate_hz = chain.sample_rate_hz
+    scale = 1.0 / reference if reference > 0.0 else 0.0
+    return _Tail.of(click * scale, frames, t60_s, rate_hz), _Tail.of(after_tone, frames, t60_s, rate_hz)
 
 
-def _envelope_frames(cluster: list[_Pole]) -> NDArray[np.int64]:
-    """Return sample numbers over which a cluster's envelope can have its largest value: a few time constants."""
+def _frames(cluster: list[_Pole]) -> NDArray[np.float64]:
+    """Return the sample numbers at which a tail is looked at: its start, or for a cluster its whole fall."""
     if len(cluster) == 1:
-        return np.arange(1, 2)
+        return np.zeros(1)
     slowest = min(abs(math.log(one.point.radius)) for one in cluster)
-    return np.unique(np.geomspace(1.0, 4.0 / slowest + 2.0, 96).astype(np.int64))
+    return np.linspace(0.0, _CLUSTER_TIME_CONSTANTS / slowest, _CLUSTER_POINTS)
 
 
-def _contour(cluster: list[_Pole], poles: Sequence[_Pole], tone: complex) -> tuple[complex, float]:
-    """Return centre and radius of a circle around a cluster that leaves every other pole outside.
+def _contours(
+    chain: Chain, realised: Sequence[PoleZero], cluster: list[_Pole], poles: Sequence[_Pole]
+) -> tuple[NDArray[np.complex128], NDArray[np.complex128]]:
+    """Return points z and weights w with h_mode[n] = Σ w·z^(n−1), on small circles around the cluster's poles.
 
-    It also keeps away from the tone's own point on the unit circle, where the integrand has a pole.
+    Poles within a quarter of the bandwidth share a circle; the circles stay within half a bandwidth, so that z^n
+    does not outgrow the tail that it stands for, and clear of the unit circle.
     """
-    centre = sum((one.value for one in cluster), 0j) / len(cluster)
-    reach = max(abs(one.value - centre) for one in cluster)
-    inside = {id(one) for one in cluster}
-    others = [abs(one.value - centre) for one in poles if id(one) not in inside]
-    others += [abs(one.value.conjugate() - centre) for one in poles if abs(one.value.imag) > 0.0]
-    outside = min(others, default=math.inf)
     slowest = min(abs(math.log(one.point.radius)) for one in cluster)
-    wanted = max(2.0 * reach, 0.5 * slowest, 1e-12)
-    if outside <= reach:
-        return (centre, max(reach, 1e-12))
-    spread = min(wanted, math.sqrt(max(reach, 0.05 * outside) * outside))
-    distance = abs(tone - centre)
-    if 0.7 * distance < spread < 1.5 * distance:
-        inner, outer = 0.7 * distance, 1.5 * distance
-        spread = inner if inner > 1.3 * reach else min(outer, math.sqrt(distance * outside))
-    return (centre, spread)
+    turned = np.exp(2j * math.pi * (np.arange(_CONTOUR_POINTS) + 0.5) / _CONTOUR_POINTS)
+    everywhere = [one.value for one in poles] + [one.value.conjugate() for one in poles if one.value.imag != 0.0]
+    points, weights = [], []
+    for group in _grouped(cluster, 0.25 * slowest):
+        centre = sum(group, 0j) / len(group)
+        reach = max(abs(value - centre) for value in group)
+        outside = min((abs(v - centre) for v in everywhere if abs(v - centre) > reach * (1.0 + 1e-9)), default=2.0)
+        spread = min(math.sqrt(max(reach, 0.2 * outside) * outside), max(0.5 * slowest, 1.5 * reach))
+        z = centre + spread * turned
+        points.append(z)
+        weights.append(spread * turned / _CONTOUR_POINTS * _transfer(chain, realised, cluster, z))
+    return np.concatenate(points), np.concatenate(weights)
+
+
+def _grouped(cluster: list[_Pole], distance: float) -> list[list[complex]]:
+    """Split a cluster into groups whose poles are linked by steps of at most ``distance``."""
+    groups: list[list[complex]] = []
+    for value in (one.value for one in cluster):
+        near = [group for group in groups if any(abs(value - other) <= distance for other in group)]
+        merged = [value]
+        for group in near:
+            merged += group
+            groups.remove(group)
+        groups.append(merged)
+    return groups
 
 
 def _transfer(
