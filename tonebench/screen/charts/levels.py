@@ -63,7 +63,7 @@ def level_limits_db(
     depth = min(0.0, max(float(np.nanmin(low_db)), usual))
     top = _upward(peak, None if before is None else before[1])
     bottom = -_upward(-depth, None if before is None else -before[0])
-    return max(min(bottom, -12.0), top - WIDEST_DB), top
+    return min(-12.0, max(bottom, top - WIDEST_DB)), top
 
 
 def _upward(level_db: float, before_db: float | None) -> float:

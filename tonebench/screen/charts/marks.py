@@ -106,7 +106,7 @@ class MarkSet:
 
     def legend(self, dash: Dash) -> str:
         """One character that stands for a curve in a title."""
-        return dash.letter if len(self.glyphs) == 2 else dash.sample
+        return dash.letter if len(self.glyphs) == 2 else self.spell(dash.sample)
 
 
 def _braille() -> MarkSet:

@@ -31,6 +31,7 @@ class ResponseChart(Chart):
         super().__init__(sample_rate_hz=sample_rate_hz, show_axis=show_axis, id=id, classes=classes)
         self._chain: Curve | None = None
         self._section: Curve | None = None
+        self._section_number: int | None = None
         self._f0_hz: float | None = None
         self._limits_db: tuple[float, float] | None = None
 
@@ -61,13 +62,14 @@ class ResponseChart(Chart):
             Its f0, marked at the foot of the plot.
         """
         self._chain, self._section, self._f0_hz = chain, section, f0_hz
-        marks = mark_set(self.marks)
-        title = "response"
-        if section is not None and section_number is not None:
-            title = f"response, chain {marks.legend(SOLID)} section {section_number} {marks.legend(DOTTED)}"
-        if self.border_title != title:
-            self.border_title = title
+        self._section_number = None if section is None else section_number
+        self._set_title()
         self.redraw()
+
+    def watch_marks(self, name: str) -> None:
+        """Draw with another set of marks, the title too."""
+        self._set_title()
+        super().watch_marks(name)
 
     def rescale(self) -> None:
         """Choose the limits afresh: another preset was loaded."""
@@ -83,7 +85,7 @@ class ResponseChart(Chart):
             (self._chain, Ink.CURVE, SOLID),
         ]
         drawn = [
-            (column_spans(np.log(curve.frequency_hz), curve.level_db, edges), ink, dash)
+            (column_spans(np.log(np.maximum(curve.frequency_hz, 1e-9)), curve.level_db, edges), ink, dash)
             for curve, ink, dash in curves
             if curve is not None
         ]
@@ -107,3 +109,12 @@ class ResponseChart(Chart):
         if self._chain is None or len(self._chain.level_db) == 0:
             return "Response: nothing to show."
         return "Response of the chain: " + describe_curve(self._chain) + "."
+
+    def _set_title(self) -> None:
+        """Explain the curves in the title; set only if it changed, since that draws the border anew."""
+        marks, number = mark_set(self.marks), self._section_number
+        title = "response"
+        if number is not None:
+            title = f"response, chain {marks.legend(SOLID)} section {number} {marks.legend(DOTTED)}"
+        if self.border_title != title:
+            self.border_title = title
