@@ -13,7 +13,16 @@ from numpy.typing import NDArray
 
 SAMPLE_RATE_HZ = 48000
 _FOLDER = Path("/usr/share/sounds/alsa")  # Debian package alsa-utils
-_NAMES = ("Front_Center", "Front_Left", "Front_Right", "Rear_Center", "Rear_Left", "Rear_Right", "Side_Left", "Side_Right")
+_NAMES = (
+    "Front_Center",
+    "Front_Left",
+    "Front_Right",
+    "Rear_Center",
+    "Rear_Left",
+    "Rear_Right",
+    "Side_Left",
+    "Side_Right",
+)
 
 
 def speech(seconds: float, seed: int) -> NDArray[np.float64]:

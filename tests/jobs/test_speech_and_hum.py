@@ -2,6 +2,7 @@
 
 import subprocess
 import sys
+from itertools import pairwise
 from pathlib import Path
 
 import numpy as np
@@ -21,7 +22,12 @@ TYPED_LINES = ("notch 50 Hz radius 0.9995", "1 name hum")
 def _tonebench(*arguments: str, cwd: Path) -> subprocess.CompletedProcess[str]:
     """Run the program as its users do."""
     return subprocess.run(
-        [sys.executable, "-m", "tonebench", *arguments], cwd=cwd, check=False, capture_output=True, text=True, timeout=120
+        [sys.executable, "-m", "tonebench", *arguments],
+        cwd=cwd,
+        check=False,
+        capture_output=True,
+        text=True,
+        timeout=120,
     )
 
 
@@ -64,7 +70,7 @@ def test_speech_is_left_alone_above_100_hz(folder: Path) -> None:
     after = np.abs(np.fft.rfft(_read(folder / "out" / "speech.wav"))) ** 2
     frequency_hz = np.fft.rfftfreq(int(SECONDS * SAMPLE_RATE_HZ), 1.0 / SAMPLE_RATE_HZ)
     edges_hz = 1000.0 * 10.0 ** ((np.arange(-9, 14) - 0.5) / 10.0)  # lowest band 112 to 141 Hz, highest to 22.4 kHz
-    for low_hz, high_hz in zip(edges_hz[:-1], edges_hz[1:], strict=True):
+    for low_hz, high_hz in pairwise(edges_hz):
         band = (frequency_hz >= low_hz) & (frequency_hz < high_hz)
         change_db = 10.0 * np.log10(after[band].sum() / before[band].sum())
         assert abs(change_db) <= 0.1, f"{low_hz:.0f} to {high_hz:.0f} Hz changed by {change_db:.3f} dB"

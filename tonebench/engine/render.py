@@ -48,7 +48,9 @@ def render_file(
     with read_blocks(source, BLOCK_FRAMES) as blocks:
         running = at_rate(chain, blocks.sample_rate_hz).chain
         kernel = Kernel(from_chain(running), blocks.channels)
-        with ClipWriter(destination, blocks.sample_rate_hz, blocks.channels, is_forced=is_forced) as writer:
+        with ClipWriter(
+            destination, blocks.sample_rate_hz, blocks.channels, is_forced=is_forced, frames=blocks.frames
+        ) as writer:
             for block in blocks:
                 with np.errstate(over="ignore", invalid="ignore"):  # an unstable chain may grow without bound
                     writer.write(kernel.process_block(block).astype(np.float32))

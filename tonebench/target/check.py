@@ -4,9 +4,11 @@ Each check stands in a module of its own and yields findings; here they are gath
 and the preset's acceptances are applied.
 """
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import replace
 from typing import Protocol
+
+import numpy as np
 
 from tonebench.core.chain import Chain
 from tonebench.target.arithmetic import Target
@@ -14,7 +16,7 @@ from tonebench.target.check_levels import check_levels
 from tonebench.target.check_poles import check_poles
 from tonebench.target.check_rates import check_rates
 from tonebench.target.check_rings import check_rings
-from tonebench.target.check_words import check_words
+from tonebench.target.check_words import check_held, check_words
 from tonebench.target.check_zeros import check_zeros
 from tonebench.target.findings import Finding
 from tonebench.target.study import study_chain
@@ -64,11 +66,22 @@ def check_chain(
         Values with ``code``, ``section``, ``up_to`` and ``because``.
 
     """
-    study = study_chain(chain, target)
-    found = [finding for check in _CHECKS for finding in check(study)]
-    found += check_rates(chain, target, build_rates_hz)
+    # Roots and gains far outside the trade overflow on the way; what comes of it is a finding, never a warning.
+    with np.errstate(all="ignore"):
+        found = list(_found(chain, target, build_rates_hz))
     judged = [_accepted(finding, chain, acceptances) for finding in _worst(found)]
     return tuple(sorted(judged, key=_order))
+
+
+def _found(chain: Chain, target: Target, build_rates_hz: Sequence[float]) -> Iterator[Finding]:
+    study = study_chain(chain, target)
+    if not study.is_computable:
+        yield from check_poles(study)
+        yield from check_held(study)
+        return
+    for check in _CHECKS:
+        yield from check(study)
+    yield from check_rates(chain, target, build_rates_hz)
 
 
 def _worst(findings: Iterable[Finding]) -> list[Finding]:

@@ -5,10 +5,9 @@ from collections.abc import Iterator
 from dataclasses import replace
 
 import numpy as np
-from numpy.typing import NDArray
 
 from tonebench.core.kinds import Kind
-from tonebench.core.response import chain_response, magnitude_db
+from tonebench.core.response import SILENCE_DB, chain_response, magnitude_db
 from tonebench.core.section import ByHand
 from tonebench.target import thresholds as limits
 from tonebench.target.findings import Finding, Severity
@@ -35,13 +34,16 @@ def is_comparable(study: Study) -> bool:
 
 
 def _gain_high(study: Study, both: Curves) -> Iterator[Finding]:
-    level_db = magnitude_db(both.ideal)
+    level_db = np.nan_to_num(magnitude_db(both.ideal), nan=SILENCE_DB, posinf=math.inf)
     best = int(np.argmax(level_db))
     gain_db = float(level_db[best])
     if gain_db <= limits.GAIN_CAUTION_DB:
         return
     is_danger = gain_db > limits.GAIN_DANGER_DB
-    lowered_db = math.floor(10.0 * (study.chain.gain_db - gain_db + limits.GAIN_CAUTION_DB)) / 10.0
+    remedy = ""
+    if math.isfinite(gain_db):
+        lowered_db = math.floor(10.0 * (study.chain.gain_db - gain_db + limits.GAIN_CAUTION_DB)) / 10.0
+        remedy = f"a chain gain_db of {lowered_db:.1f} brings it under {in_db(limits.GAIN_CAUTION_DB)}"
     yield Finding(
         "gain-high",
         Severity.DANGER if is_danger else Severity.CAUTION,
@@ -50,17 +52,23 @@ def _gain_high(study: Study, both: Curves) -> Iterator[Finding]:
         limits.GAIN_DANGER_DB if is_danger else limits.GAIN_CAUTION_DB,
         "dB",
         f"lifts {in_hz(float(both.frequency_hz[best]))} by {in_db(gain_db)}",
-        f"a chain gain_db of {lowered_db:.1f} brings it to {in_db(limits.GAIN_CAUTION_DB)}",
+        remedy,
     )
 
 
 def largest_deviation(both: Curves, floor_db: float) -> tuple[float, float]:
-    """Return the largest |difference| in dB, and its frequency, where the ideal lies above ``floor_db`` of its maximum."""
+    """Return the largest |difference| in dB, and its frequency, where the ideal lies above ``floor_db`` of its maximum.
+
+    What the rounded chain has under -60 dB of that maximum counts as -60 dB: a null beside the wanted place is no
+    infinite fault.
+    """
     ideal_db, rounded_db = magnitude_db(both.ideal), magnitude_db(both.rounded)
-    weighty = ideal_db > float(np.max(ideal_db)) + floor_db
+    top_db = float(np.max(ideal_db))
+    rounded_db = np.maximum(rounded_db, top_db + limits.RESPONSE_FLOOR_DB)
+    weighty = ideal_db > top_db + floor_db
     if not np.any(weighty):
         return (0.0, 0.0)
-    deviation: NDArray[np.float64] = np.where(weighty, np.abs(rounded_db - ideal_db), 0.0)
+    deviation = np.nan_to_num(np.where(weighty, np.abs(rounded_db - ideal_db), 0.0), posinf=0.0)
     worst = int(np.argmax(deviation))
     return (float(deviation[worst]), float(both.frequency_hz[worst]))
 
@@ -70,13 +78,13 @@ def _response_changed(study: Study, both: Curves) -> Iterator[Finding]:
     if deviation_db <= limits.RESPONSE_NOTE_DB:
         return
     weighty_db, weighty_hz = largest_deviation(both, limits.RESPONSE_WEIGHTY_DB)
-    severity, limit = Severity.NOTE, limits.RESPONSE_NOTE_DB
+    severity, limit, floor_db = Severity.NOTE, limits.RESPONSE_NOTE_DB, limits.RESPONSE_FLOOR_DB
     if weighty_db > limits.RESPONSE_DANGER_DB:
         severity, limit = Severity.DANGER, limits.RESPONSE_DANGER_DB
     elif weighty_db > limits.RESPONSE_CAUTION_DB:
         severity, limit = Severity.CAUTION, limits.RESPONSE_CAUTION_DB
     if severity is not Severity.NOTE:
-        deviation_db, frequency_hz = weighty_db, weighty_hz
+        deviation_db, frequency_hz, floor_db = weighty_db, weighty_hz, limits.RESPONSE_WEIGHTY_DB
     yield Finding(
         "response-changed",
         severity,
@@ -85,23 +93,22 @@ def _response_changed(study: Study, both: Curves) -> Iterator[Finding]:
         limit,
         "dB",
         f"the words of {study.target} change the response by up to {in_db_unsigned(deviation_db)}, "
-        f"at {in_hz(frequency_hz)}",
-        _response_remedy(study, deviation_db),
+        f"at {in_hz(frequency_hz)}, where it lies within {-floor_db:.0f} dB of its maximum",
+        _response_remedy(study, deviation_db, floor_db),
     )
 
 
-def _response_remedy(study: Study, now_db: float) -> str:
+def _response_remedy(study: Study, now_db: float, floor_db: float) -> str:
     """Name the target that changes the whole response least, if it halves the change."""
     for group in alternatives(study.target):
         tried = []
         for target in group:
             other = study_chain(study.chain, target)
             if is_comparable(other):
-                weighty_db = largest_deviation(curves(other), limits.RESPONSE_WEIGHTY_DB)[0]
-                tried.append((weighty_db, str(target)))
+                tried.append((largest_deviation(curves(other), floor_db)[0], str(target)))
         best = min(tried, default=None)
         if best is not None and best[0] <= 0.5 * now_db:
-            return f"{best[1]} changes it by {in_db_unsigned(best[0])} within 20 dB of its maximum"
+            return f"{best[1]} changes it by at most {in_db_unsigned(best[0])}"
     return ""
 
 

@@ -31,8 +31,8 @@ def check_rates(chain: Chain, target: Target, build_rates_hz: Sequence[float]) -
                 yield finding
         kept = [number for number in range(1, len(chain.sections) + 1) if number not in left_out]
         for finding in check_poles(study_chain(change.chain, target)):
-            number = None if finding.section is None else kept[finding.section - 1]
-            yield replace(finding, section=number, message=f"at {in_hz(rate_hz)}: {finding.message}")
+            place = None if finding.section is None else kept[finding.section - 1]
+            yield replace(finding, section=place, message=f"at {in_hz(rate_hz)}: {finding.message}")
 
 
 def _lost(chain: Chain, number: int, rate_hz: float, loss: str) -> Finding:
@@ -42,7 +42,7 @@ def _lost(chain: Chain, number: int, rate_hz: float, loss: str) -> Finding:
         remedy = "give gain_at_hz, the frequency at which gain_db is to hold at every rate"
     message = loss if is_left_out else f"at {in_hz(rate_hz)}: {loss}"
     severity = Severity.DANGER if is_left_out else Severity.CAUTION
-    return Finding("rate-lost", severity, number, rate_hz, None, "Hz", message, remedy)
+    return Finding("rate-lost", severity, number, None, None, "", message, remedy)
 
 
 def _near_nyquist(chain: Chain, rate_hz: float) -> Iterator[Finding]:

@@ -43,7 +43,12 @@ def _owner(study: Study, mode: Ring) -> Part | None:
 def _heard(study: Study, part: Part, mode: Ring, limit_s: float) -> Iterator[Finding]:
     is_caution = mode.t60_s > limits.RING_CAUTION_FACTOR * limit_s
     after = {
-        "ring-after-click": ("a click", "the largest sample of the click's answer", mode.click_level_db, mode.click_ring_s),
+        "ring-after-click": (
+            "a click",
+            "the largest sample of the click's answer",
+            mode.click_level_db,
+            mode.click_ring_s,
+        ),
         "ring-after-tone": ("a tone", "the tone", mode.tone_level_db, mode.tone_ring_s),
     }
     for code, (what, reference, level_db, audible_s) in after.items():
@@ -57,7 +62,7 @@ def _heard(study: Study, part: Part, mode: Ring, limit_s: float) -> Iterator[Fin
             limits.RING_CAUTION_FACTOR * limit_s if is_caution else limit_s,
             "s",
             f"rings {in_seconds(mode.t60_s)} (T60) at {in_hz(mode.frequency_hz)} after {what}, from {in_db(level_db)} "
-            f"against {reference}, {in_seconds(audible_s)} until it is 60 dB under it; about {in_seconds(limit_s)} is "
-            f"heard there",
+            f"against {reference}, {in_seconds(audible_s)} until it is 60 dB under it; over about "
+            f"{in_seconds(limit_s)} is heard there",
             ring_remedy(part.section, study.chain.sample_rate_hz),
         )

@@ -13,8 +13,8 @@ from tonebench.core.roots import NO_ROOTS
 from tonebench.target import thresholds as limits
 from tonebench.target.arithmetic import NumberFormat
 from tonebench.target.findings import Finding, Severity
-from tonebench.target.study import Part, Study
 from tonebench.target.structures import Form
+from tonebench.target.study import Part, Study
 from tonebench.target.text import in_db, in_words
 
 _DB_PER_BIT = 20.0 * math.log10(2.0)
@@ -23,15 +23,20 @@ _TAIL_FRAMES = 2048
 
 def check_words(study: Study) -> Iterator[Finding]:
     """Yield what the target's words cannot hold, or hold only by a shift."""
-    for part in study.parts:
-        if not part.words.is_held:
-            yield _not_held(study, part)
+    yield from check_held(study)
     yield from _shifted(study)
     for part in study.parts:
         if part.words.form is Form.FIRST_ORDERS and part.ideal.poles != NO_ROOTS:
             yield _fallback(study, part)
     if not study.target.number_format.is_float and study.is_ideal_stable:
         yield from _overflow(study)
+
+
+def check_held(study: Study) -> Iterator[Finding]:
+    """Yield the sections that no word of the target can hold."""
+    for part in study.parts:
+        if not part.words.is_held:
+            yield _not_held(study, part)
 
 
 def _not_held(study: Study, part: Part) -> Finding:
@@ -63,8 +68,8 @@ def _shifted(study: Study) -> Iterator[Finding]:
         float(needed),
         float(number_format.integer_bits),
         "bits",
-        f"coefficients of section{'s' if many else ''} {in_words([part.number for part in shifted])} are over the range "
-        f"of {number_format}; section {worst.number} needs words of {words}",
+        f"coefficients of section{'s' if many else ''} {in_words([part.number for part in shifted])} are over the "
+        f"range of {number_format}; section {worst.number} needs words of {words}",
         f"store them as {words} and shift the sums left by {needed - number_format.integer_bits}",
     )
 
@@ -111,7 +116,7 @@ def output_norms(study: Study) -> list[Norm]:
     heard = unit
     for index, part in enumerate(study.parts):
         heard = run(_one(coefficients, index), unit if coefficients.combine == "sum" else heard)
-        total += heard
+        total = total + heard
         norms.append(Norm(part.number, _sum_with_tail(heard, slowest, needed), needed <= frames))
     if coefficients.combine == "sum":
         heard = total + coefficients.direct_gain * unit
@@ -140,7 +145,7 @@ def _overflow(study: Study) -> Iterator[Finding]:
     headroom_db = _DB_PER_BIT * number_format.integer_bits
     worst = max(output_norms(study), key=lambda norm: norm.value)
     level_db = 20.0 * math.log10(worst.value) if worst.value > 0.0 else -math.inf
-    if level_db <= headroom_db:
+    if not (headroom_db < level_db < math.inf):
         return
     node = "the chain's output" if worst.number is None else f"the output of section {worst.number}"
     word = "bound" if worst.is_whole else "estimate of the bound"

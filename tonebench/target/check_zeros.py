@@ -35,7 +35,7 @@ def notch_angle_rad(ideal: PoleZero) -> float | None:
 
 
 def level_left_db(ideal: PoleZero, rounded: PoleZero, angle_rad: float) -> float:
-    """Return the rounded section's level at the intended notch, against the ideal's higher end (0 Hz or half the rate)."""
+    """Return the rounded section's level at the intended notch, against the ideal's level at 0 Hz or half the rate."""
     ends = np.abs(section_response(ideal, np.array([0.0, math.pi])))
     left = float(np.abs(section_response(rounded, np.array([angle_rad])))[0])
     reference = float(np.max(ends))
@@ -65,14 +65,15 @@ def _filled(study: Study, part: Part, rounded: PoleZero, angle_rad: float) -> It
         left_db,
         limit,
         "dB",
-        f"{study.target} leaves {in_db(left_db)} at {in_hz(study.to_hz(angle_rad))}, which the notch should remove: {where}",
+        f"{study.target} leaves {in_db(left_db)} at {in_hz(study.to_hz(angle_rad))}, which the notch "
+        f"should remove: {where}",
         _remedy(study, part, angle_rad, left_db),
     )
 
 
 def _remedy(study: Study, part: Part, angle_rad: float, now_db: float) -> str:
     def amplitude(rounded: PoleZero) -> float:
-        return 10.0 ** (level_left_db(part.ideal, rounded, angle_rad) / 20.0)
+        return math.pow(10.0, level_left_db(part.ideal, rounded, angle_rad) / 20.0)
 
     trial = best_trial(part, study.target, amplitude, 10.0 ** (now_db / 20.0))
     if trial is None:

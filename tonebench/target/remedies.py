@@ -93,7 +93,9 @@ def pole_fault(ideal: PoleZero, rounded: PoleZero) -> float:
 
 def pole_remedy(study: Study, part: Part) -> str:
     """Name the target that keeps this section's pole best, with where it keeps it."""
-    now = math.inf if part.rounded is None or not is_section_stable(part.words) else pole_fault(part.ideal, part.rounded)
+    now = (
+        math.inf if part.rounded is None or not is_section_stable(part.words) else pole_fault(part.ideal, part.rounded)
+    )
     trial = best_trial(part, study.target, lambda rounded: pole_fault(part.ideal, rounded), now)
     if trial is None:
         return ""
@@ -118,7 +120,7 @@ def ring_remedy(section: Section, sample_rate_hz: float) -> str:
     if q is None:
         return ""
     ring_s = _ring_of_q(section, q, sample_rate_hz)
-    return "" if ring_s is None else f"a q of {q:.3g} rings {in_seconds(ring_s[0])}"
+    return "" if ring_s is None else f"a q of {_plain(q)} rings {in_seconds(ring_s[0])}"
 
 
 def longest_q(section: Section, sample_rate_hz: float) -> float | None:
@@ -164,6 +166,10 @@ def _pole_hz(section: Section, sample_rate_hz: float) -> float:
 def _three_digits_down(value: float) -> float:
     scale = 10.0 ** (2 - math.floor(math.log10(value)))
     return math.floor(value * scale * (1.0 + 1e-12)) / scale
+
+
+def _plain(q: float) -> str:
+    return f"{q:.3g}" if q < 1000.0 else f"{q:.0f}"
 
 
 def _radius_down(radius: float) -> float:

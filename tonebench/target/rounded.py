@@ -57,9 +57,7 @@ class RoundedChain:
 
 def round_chain(chain: Chain, target: Target) -> RoundedChain:
     """Return the chain as the target stores it."""
-    sections = tuple(
-        round_section(one, target.number_format, target.structure) for one in chain.realised()
-    )
+    sections = tuple(round_section(one, target.number_format, target.structure) for one in chain.realised())
     return RoundedChain(
         sample_rate_hz=chain.sample_rate_hz,
         combine=chain.combine,
@@ -99,9 +97,6 @@ def roots_of(c1: Fraction, c2: Fraction) -> Roots:
     if discriminant < 0:
         angle = math.atan2(math.sqrt(-discriminant), half)
         return ConjugatePair(math.sqrt(c2), min(angle, math.pi))
-    for exact in (1, -1):  # a root on the circle is told from one beside it
-        if 1 + exact * c1 + c2 == 0:
-            return RealRoots((float(exact), float(exact * c2)))
     # The far root adds, so nothing cancels; the near one follows from the product.
     far = float(half) + math.copysign(math.sqrt(discriminant), half)
     return RealRoots((far, float(c2) / far))

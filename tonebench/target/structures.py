@@ -40,6 +40,12 @@ GROUPS: dict[Form, tuple[tuple[str, ...], ...]] = {
 }
 
 
+# A pair nearer than this to the real axis is two equal real poles to a double: its square is under 2^-53.
+_SMALLEST_OMEGA = 2.0**-27
+# |1 − p|² or |1 + p|² of a pole so near to 1 or −1 that svf's taps would leave every word.
+_SMALLEST_DISTANCE = 2.0**-60
+
+
 @dataclass(frozen=True, slots=True)
 class Transfer:
     """(b0 + b1/z + b2/z²)/(1 + a1/z + a2/z²) in exact numbers."""
@@ -55,12 +61,20 @@ def form_of(realised: PoleZero, structure: Structure) -> Form:
     """Return how a section is held in a structure."""
     if structure is Structure.COUPLED:
         poles = realised.poles
-        is_pair = isinstance(poles, ConjugatePair) and 0.0 < poles.angle_rad < math.pi and poles.radius > 0.0
+        is_pair = isinstance(poles, ConjugatePair) and poles.radius * math.sin(poles.angle_rad) > _SMALLEST_OMEGA
         return Form.COUPLED if is_pair else Form.FIRST_ORDERS
-    if structure is Structure.SVF and _at_one(realised.poles) * _at_minus_one(realised.poles) > 0.0:
+    if structure is Structure.SVF and _has_svf(realised.poles):
         return Form.SVF
-    # What svf cannot hold has a real pole on or outside the circle; it is an unstable section in any structure.
     return Form.DIRECT
+
+
+def _has_svf(poles: Roots) -> bool:
+    """Tell whether g and k are real and finite: all but sections with a real pole outside, or a pole at 1 or −1.
+
+    Those are unstable, or so to a double, in any structure.
+    """
+    at_one, at_minus_one = _at_one(poles), _at_minus_one(poles)
+    return at_one * at_minus_one > 0.0 and min(abs(at_one), abs(at_minus_one)) > _SMALLEST_DISTANCE
 
 
 def wanted_words(realised: PoleZero, form: Form) -> tuple[float, ...]:
@@ -95,7 +109,7 @@ def _coupled(realised: PoleZero, poles: ConjugatePair) -> tuple[float, ...]:
     if isinstance(zeros, ConjugatePair):
         zero_sigma, zero_omega = zeros.radius * math.cos(zeros.angle_rad), zeros.radius * math.sin(zeros.angle_rad)
         first = 2.0 * (sigma - zero_sigma)
-        second = (sigma - zero_sigma) ** 2 + (zero_omega - omega) * (zero_omega + omega)
+        second = _square(sigma - zero_sigma) + (zero_omega - omega) * (zero_omega + omega)
     else:
         q1, q2 = _two(zeros.values)
         first = 2.0 * sigma - (q1 + q2)
@@ -130,9 +144,11 @@ def _svf_transfer(words: tuple[Fraction, ...]) -> Transfer | None:
     b0 = m0 * scale + m1 * g + m2 * square
     b1 = m0 * (2 * square - 2) + 2 * m2 * square
     b2 = m0 * (1 - damping + square) - m1 * g + m2 * square
-    return Transfer(
-        b0 / scale, b1 / scale, b2 / scale, (2 * square - 2) / scale, (1 - damping + square) / scale
-    )
+    return Transfer(b0 / scale, b1 / scale, b2 / scale, (2 * square - 2) / scale, (1 - damping + square) / scale)
+
+
+def _square(value: float) -> float:
+    return value * value  # ** raises where this gives inf
 
 
 def _two(values: tuple[float, ...]) -> tuple[float, float]:
@@ -150,14 +166,14 @@ def _real_values(roots: Roots) -> tuple[float, float]:
 def _at_one(roots: Roots) -> float:
     """Return Π(1 − root), without cancellation near 1."""
     if isinstance(roots, ConjugatePair):
-        return (1.0 - roots.radius) ** 2 + 4.0 * roots.radius * math.sin(0.5 * roots.angle_rad) ** 2
+        return _square(1.0 - roots.radius) + 4.0 * roots.radius * _square(math.sin(0.5 * roots.angle_rad))
     return math.prod(1.0 - value for value in roots.values)
 
 
 def _at_minus_one(roots: Roots) -> float:
     """Return Π(1 + root), without cancellation near −1."""
     if isinstance(roots, ConjugatePair):
-        return (1.0 - roots.radius) ** 2 + 4.0 * roots.radius * math.cos(0.5 * roots.angle_rad) ** 2
+        return _square(1.0 - roots.radius) + 4.0 * roots.radius * _square(math.cos(0.5 * roots.angle_rad))
     return math.prod(1.0 + value for value in roots.values)
 
 

@@ -14,7 +14,7 @@ from tonebench.core.section import Section
 from tonebench.core.widths import ring_from_radius
 from tonebench.target.arithmetic import Target
 from tonebench.target.rounded import RoundedChain, round_chain
-from tonebench.target.rounding import RoundedSection
+from tonebench.target.rounding import LARGEST_MAGNITUDE, RoundedSection
 
 _GRID_POINTS = 240
 _SPREAD = np.array([0.0, 0.1, 0.3, 0.6, 1.0, 2.0, 4.0, 8.0, 16.0, 32.0])
@@ -77,6 +77,12 @@ class Study:
     twin: RoundedChain
 
     @property
+    def is_computable(self) -> bool:
+        """Whether doubles can follow the chain: no root beyond ``LARGEST_MAGNITUDE``."""
+        roots = [one for part in self.parts for one in (part.ideal.poles, part.ideal.zeros)]
+        return largest_radius(roots) <= LARGEST_MAGNITUDE
+
+    @property
     def is_ideal_stable(self) -> bool:
         """Whether every ideal pole lies inside the circle."""
         return all(part.ideal_radius < 1.0 for part in self.parts)
@@ -95,9 +101,7 @@ def study_chain(chain: Chain, target: Target) -> Study:
     twin = round_chain(chain, target)
     active = [(number, one) for number, one in enumerate(chain.sections, start=1) if not one.is_bypassed]
     lined_up = zip(active, chain.realised(), twin.sections, twin.realised, strict=True)
-    parts = tuple(
-        Part(number, section, ideal, words, rounded) for (number, section), ideal, words, rounded in lined_up
-    )
+    parts = tuple(Part(number, section, ideal, words, rounded) for (number, section), ideal, words, rounded in lined_up)
     return Study(chain, target, parts, twin)
 
 
