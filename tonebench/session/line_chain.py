@@ -53,7 +53,7 @@ def change_build(preset: Preset, cursor: Cursor) -> tuple[Preset, str]:
     if not cursor.take_word("rates"):
         raise TypedLineError("build must be followed by rates and numbers, such as build rates 44100 48000")
     rates = []
-    while not cursor.is_done:
+    while not cursor.is_done():
         rates.append(cursor.number("a build rate", "hz", "").value)
     words = ", ".join(f"{rate_hz:g}" for rate_hz in rates)
     return replace(preset, build_rates_hz=tuple(rates)), f"build rates {words} Hz" if rates else "no build rates"
@@ -63,7 +63,7 @@ def accept_finding(preset: Preset, cursor: Cursor) -> tuple[Preset, str]:
     """Apply what follows ``accept``: CODE [SECTION] [up to NUMBER] because REASON."""
     code = _take_any(cursor, "accept must be followed by a finding's code, such as ring-after-tone")
     section, up_to = "", None
-    while not cursor.is_done and not cursor.take_word("because"):
+    while not cursor.is_done() and not cursor.take_word("because"):
         if cursor.take_word("up"):
             if not cursor.take_word("to"):
                 raise TypedLineError("up must be followed by to and a number")
@@ -78,6 +78,6 @@ def accept_finding(preset: Preset, cursor: Cursor) -> tuple[Preset, str]:
 
 
 def _take_any(cursor: Cursor, complaint: str) -> str:
-    if cursor.is_done:
+    if cursor.is_done():
         raise TypedLineError(complaint)
     return cursor.take().text

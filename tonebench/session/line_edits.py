@@ -29,7 +29,7 @@ EDIT_WORDS = _WORDS
 def read_edits(cursor: Cursor) -> list[Edit]:
     """Read every edit on the rest of the line."""
     edits = []
-    while not cursor.is_done:
+    while not cursor.is_done():
         edits.append(_read_edit(cursor))
     return edits
 

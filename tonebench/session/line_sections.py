@@ -49,7 +49,7 @@ def read_section(kind: Kind, cursor: Cursor) -> Section:
     if kind is Kind.FREE:
         return Section(_read_by_hand(cursor))
     numbers = _Numbers()
-    while not cursor.is_done:
+    while not cursor.is_done():
         numbers.read(kind, cursor)
     if numbers.frequency_hz is None:
         raise TypedLineError(f"a {kind} needs a frequency, such as {kind} 320 Hz")
@@ -106,7 +106,7 @@ def read_width(word: str, cursor: Cursor) -> Width:
 
 def _read_by_hand(cursor: Cursor) -> ByHand:
     made = ByHand()
-    while not cursor.is_done:
+    while not cursor.is_done():
         token = cursor.peek()
         word = cursor.take_word("pole", "poles", "zero", "zeros", "gain", "at")
         if word in ("pole", "poles"):

@@ -124,7 +124,6 @@ class Cursor:
         self._tokens = tokens
         self._position = 0
 
-    @property
     def is_done(self) -> bool:
         """Whether everything was read."""
         return self._position >= len(self._tokens)

@@ -63,7 +63,7 @@ def apply_line(preset: Preset, selected: int, text: str) -> Outcome:
 
 
 def _apply(preset: Preset, selected: int, cursor: Cursor) -> Outcome:
-    if cursor.is_done:
+    if cursor.is_done():
         raise TypedLineError("the line is empty; try: peak 320 Hz -4 dB q 1.2")
     whole = cursor.take_word(*_WHOLE)
     if whole is not None:
@@ -71,7 +71,7 @@ def _apply(preset: Preset, selected: int, cursor: Cursor) -> Outcome:
         _expect_end(cursor)
         return Outcome(changed, min(selected, len(changed.chain.sections) - 1), sentence)
     kind = take_kind(cursor)
-    if kind is not None and not (kind is Kind.FREE and cursor.is_done):
+    if kind is not None and not (kind is Kind.FREE and cursor.is_done()):
         return _add(preset, selected, read_section(kind, cursor))
     if kind is Kind.FREE:
         cursor = Cursor(tokenize("free"))  # alone it is an edit: make the selected section free

@@ -19,6 +19,11 @@ from tonebench.target.arithmetic import Target
 from tonebench.target.rounding import RoundedSection, round_section, round_words
 
 
+# A root under 2^-100 is 0, and one over 2^100 is a sample of delay: neither bends a response by a double's last bit,
+# and their squares would leave the range of doubles.
+_NEGLIGIBLE = Fraction(1, 2**200)
+
+
 @dataclass(frozen=True, slots=True)
 class RoundedChain:
     """A chain as a target stores it.
@@ -71,7 +76,7 @@ def round_chain(chain: Chain, target: Target) -> RoundedChain:
 def pole_zero(section: RoundedSection) -> PoleZero | None:
     """Return the poles, zeros and gain that a rounded section really has; None where it is not held.
 
-    A leading coefficient that was rounded to nothing becomes a sample of delay.
+    A leading coefficient that was rounded to nothing (or as good as) becomes a sample of delay.
     """
     made = section.transfer
     if made is None:
@@ -79,7 +84,8 @@ def pole_zero(section: RoundedSection) -> PoleZero | None:
     numerator = [made.b0, made.b1, made.b2]
     poles = roots_of(made.a1, made.a2)
     delay = section.delay_samples
-    while numerator and numerator[0] == 0:
+    largest = max(abs(one) for one in numerator)
+    while numerator and abs(numerator[0]) <= _NEGLIGIBLE * largest:
         numerator.pop(0)
         delay += 1
     if not numerator:
@@ -90,7 +96,7 @@ def pole_zero(section: RoundedSection) -> PoleZero | None:
 
 def roots_of(c1: Fraction, c2: Fraction) -> Roots:
     """Return the roots of 1 + c1/z + c2/z² from exact numbers, each to double precision."""
-    if c2 == 0:
+    if abs(c2) <= _NEGLIGIBLE:
         return NO_ROOTS if c1 == 0 else RealRoots((float(-c1),))
     half = -c1 / 2
     discriminant = half * half - c2
