@@ -1,6 +1,7 @@
 """Chains and strategies shared by the tests of the target room."""
 
 import math
+from collections.abc import Sequence
 
 from hypothesis import strategies as st
 
@@ -8,6 +9,9 @@ from tonebench.core.chain import Chain
 from tonebench.core.kinds import Kind
 from tonebench.core.roots import NO_ROOTS, ConjugatePair, RealRoots, Roots
 from tonebench.core.section import ByHand, Section, by_kind
+from tonebench.target.arithmetic import parse_target
+from tonebench.target.check import check_chain
+from tonebench.target.findings import Finding
 
 RATE_HZ = 48000.0
 
@@ -55,3 +59,14 @@ hostile_roots: st.SearchStrategy[Roots] = st.one_of(
         RealRoots, st.lists(st.builds(math.copysign, _sizes, st.sampled_from([1.0, -1.0])), max_size=2).map(tuple)
     ),
 )
+
+
+def found(chain: Chain, target: str, code: str, rates_hz: Sequence[float] = ()) -> list[Finding]:
+    """Return the findings of one code."""
+    return [one for one in check_chain(chain, parse_target(target), rates_hz) if one.code == code]
+
+
+def only(chain: Chain, target: str, code: str, rates_hz: Sequence[float] = ()) -> Finding:
+    """Return the one finding of a code."""
+    (finding,) = found(chain, target, code, rates_hz)
+    return finding

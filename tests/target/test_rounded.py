@@ -16,7 +16,7 @@ from tonebench.target.arithmetic import F32, F64, Structure, parse_format
 from tonebench.target.rounded import pole_zero, roots_of
 from tonebench.target.rounding import RoundedSection, round_section, round_to_step
 from tonebench.target.stability import is_inside_triangle, is_section_stable
-from tonebench.target.structures import Form
+from tonebench.target.structures import Form, Transfer
 
 
 def mp_roots(c1: Fraction, c2: Fraction) -> list[complex]:
@@ -51,6 +51,13 @@ def test_roots_against_mpmath(first: int, second: int, bits: int) -> None:
     for one, other in zip(got, wanted, strict=True):
         # Square root, sum, radius and cosine round once or twice each: 8 half-ulps of the root's own size.
         assert abs(one - other) <= 8.0 * 2.0**-53 * max(abs(other), 1.0)
+
+
+def test_double_roots_are_real() -> None:
+    """(z − 1/2)² has two real roots, not a pair without a frequency; z² and z² + z/4 have none or one beside 0."""
+    assert roots_of(Fraction(-1), Fraction(1, 4)) == RealRoots((0.5, 0.5))
+    assert roots_of(Fraction(0), Fraction(0)) == NO_ROOTS
+    assert roots_of(Fraction(1, 4), Fraction(0)) == RealRoots((-0.25,))
 
 
 def _direct_at_step(bits: int) -> ConjugatePair | RealRoots:
@@ -167,6 +174,24 @@ def test_stability_against_matrix_powers(structure: Structure, name: str) -> Non
     assert any(verdicts)
     if name != "f32":
         assert not all(verdicts)  # the draw really reaches both sides
+
+
+def test_words_exactly_on_the_circle_are_not_stable() -> None:
+    """σ = 0, ω = 1 turns for ever; real poles are judged one by one; words by hand."""
+    made = Transfer(*(Fraction(0),) * 5)
+    rest = (Fraction(1), Fraction(0), Fraction(0))
+    for form, first, second, is_stable in (
+        (Form.COUPLED, Fraction(0), Fraction(1), False),
+        (Form.COUPLED, Fraction(0), Fraction(2**30 - 1, 2**30), True),
+        (Form.FIRST_ORDERS, Fraction(1, 2), Fraction(-1), False),
+        (Form.FIRST_ORDERS, Fraction(1), Fraction(1, 2), False),
+        (Form.FIRST_ORDERS, Fraction(1, 2), Fraction(-1, 2), True),
+        (Form.SVF, Fraction(1, 2), Fraction(0), False),
+        (Form.SVF, Fraction(0), Fraction(1), False),
+        (Form.SVF, Fraction(1, 2), Fraction(1), True),
+    ):
+        words = RoundedSection(form, (first, second, *rest), (), made, 0, 0)
+        assert is_section_stable(words) is is_stable, (form, first, second)
 
 
 @settings(max_examples=100, deadline=None)

@@ -10,11 +10,12 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from tests.target.cases import any_roots, pole_pair
+from tonebench.core.chain import Chain
 from tonebench.core.design import PoleZero
 from tonebench.core.response import section_response
 from tonebench.core.roots import ConjugatePair, RealRoots, polynomial
-from tonebench.target.arithmetic import F32, F64, Structure, parse_format
-from tonebench.target.rounded import pole_zero
+from tonebench.target.arithmetic import F32, F64, Structure, parse_format, parse_target
+from tonebench.target.rounded import pole_zero, round_chain
 from tonebench.target.rounding import round_section, round_to_step, round_words
 from tonebench.target.structures import Form
 
@@ -179,3 +180,13 @@ def test_all_zero_numerator_is_silence() -> None:
     assert made is not None
     assert made.gain == 0.0
     assert isinstance(made.poles, ConjugatePair)
+
+
+def test_gains_are_words_too() -> None:
+    """Chain gain and direct gain round to a word of their own: by hand on the grid of Q0.15 and Q1.14."""
+    chain = Chain("", 48000.0, (), 20.0 * math.log10(5.0 / 3.0), "sum", 20.0 * math.log10(0.3))
+    twin = round_chain(chain, parse_target("q15/df1"))
+    assert twin.gain == 27307 / 2**14  # 5/3 needs one integer bit: 27306.67 rounds up
+    assert twin.direct_gain == 9830 / 2**15  # 9830.4 rounds down
+    assert round_chain(chain, parse_target("f32/df1")).gain == float(np.float32(10.0 ** (chain.gain_db / 20.0)))
+    assert abs(twin.response(np.array([1000.0]))[0]) == pytest.approx(twin.gain * twin.direct_gain, rel=1e-15)

@@ -98,8 +98,9 @@ def _weight(finding: Finding) -> tuple[int, float]:
     return (finding.severity.rank, finding.measured or 0.0)
 
 
-def _order(finding: Finding) -> tuple[bool, int, int, str]:
-    return (finding.accepted, -finding.severity.rank, finding.section or 0, finding.code)
+def _order(finding: Finding) -> tuple[bool, int, bool, int, str]:
+    is_lesser = not finding.code.startswith("unstable")  # what never falls silent comes before what is only wrong
+    return (finding.accepted, -finding.severity.rank, is_lesser, finding.section or 0, finding.code)
 
 
 def _accepted(finding: Finding, chain: Chain, acceptances: Sequence[Acceptance]) -> Finding:

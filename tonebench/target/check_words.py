@@ -148,7 +148,7 @@ def _overflow(study: Study) -> Iterator[Finding]:
     if not (headroom_db < level_db < math.inf):
         return
     node = "the chain's output" if worst.number is None else f"the output of section {worst.number}"
-    word = "bound" if worst.is_whole else "estimate of the bound"
+    word = "bound" if worst.is_whole else "estimated bound"
     over_db = level_db - headroom_db
     yield Finding(
         "overflow-possible",
@@ -157,7 +157,7 @@ def _overflow(study: Study) -> Iterator[Finding]:
         level_db,
         headroom_db,
         "dB",
-        f"a full-scale input can reach {in_db(level_db)} at {node} (ℓ1 {word}; few signals come near it), "
+        f"a full-scale input can reach {in_db(level_db)} at {node} ({word}: the sum of |h|; few signals come near it), "
         f"and {number_format} holds {in_db(headroom_db)}",
         f"lower the input by {math.ceil(10.0 * over_db) / 10.0:.1f} dB{_wider(number_format, over_db)}",
     )

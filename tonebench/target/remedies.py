@@ -25,8 +25,6 @@ from tonebench.target.thresholds import ring_limit_s
 _DISTINCT = (Structure.TDF2, Structure.COUPLED, Structure.SVF)
 _DIRECT = (Structure.DF1, Structure.DF2, Structure.TDF2)
 _BETTER = 0.5  # what is named must leave at most half of the fault
-_RING_STEP = 0.995
-_RING_STEPS = 60
 
 
 @dataclass(frozen=True, slots=True)
@@ -132,17 +130,9 @@ def longest_q(section: Section, sample_rate_hz: float) -> float | None:
     ring_s = now.get(WidthKey.RING_S)
     if ring_s is None:
         return None
-    pole_hz = _pole_hz(section, sample_rate_hz)
-    q = now[WidthKey.Q] * ring_limit_s(pole_hz) / ring_s if pole_hz else now[WidthKey.Q]
-    for _ in range(_RING_STEPS):
-        q = _three_digits_down(q)
-        rung = _ring_of_q(section, q, sample_rate_hz)
-        if rung is None:
-            return None
-        if rung[0] <= ring_limit_s(rung[1]):
-            return q
-        q *= _RING_STEP
-    return None
+    q = _three_digits_down(now[WidthKey.Q] * ring_limit_s(_pole_hz(section, sample_rate_hz)) / ring_s)
+    rung = _ring_of_q(section, q, sample_rate_hz)
+    return q if rung is not None and rung[0] <= ring_limit_s(rung[1]) else None
 
 
 def _ring_of_q(section: Section, q: float, sample_rate_hz: float) -> tuple[float, float] | None:

@@ -18,7 +18,6 @@ from tonebench.core.roots import NO_ROOTS, ConjugatePair, RealRoots, Roots
 from tonebench.target.arithmetic import Target
 from tonebench.target.rounding import RoundedSection, round_section, round_words
 
-
 # A root under 2^-100 is 0, and one over 2^100 is a sample of delay: neither bends a response by a double's last bit,
 # and their squares would leave the range of doubles.
 _NEGLIGIBLE = Fraction(1, 2**200)

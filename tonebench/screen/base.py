@@ -1,0 +1,108 @@
+"""What all actions of the screen stand on: the open bench, the panels, the message line, and refusals in words.
+
+Nothing here or in the actions imports numpy or core when it is loaded: they are on the way to the first picture.
+"""
+
+from collections.abc import Callable
+from typing import TYPE_CHECKING, TypeVar
+
+from textual.app import App
+from textual.widget import Widget
+
+from tonebench.errors import TonebenchError
+from tonebench.screen.panels.findings import FindingsPanel
+from tonebench.screen.panels.rows import MessageRow, StatusRow
+from tonebench.screen.shell import TypedInput
+
+if TYPE_CHECKING:
+    from tonebench.screen.bench import Bench
+
+_Widget = TypeVar("_Widget", bound=Widget)
+
+
+class BaseApp(App[None]):
+    """The application as its actions know it.
+
+    Attributes
+    ----------
+    bench : Bench or None
+        None until it is loaded.
+    failure : Exception or None
+        Why it could not be loaded.
+    marks : str
+        What the terminal can show.
+
+    """
+
+    bench: "Bench | None" = None
+    failure: Exception | None = None
+    marks: str = "braille"
+    wants_to_quit: bool = False
+
+    def part(self, kind: type[_Widget]) -> _Widget:
+        """Return a panel of the main screen, even while the help lies over it."""
+        return self.screen_stack[0].query_one(kind)
+
+    @property
+    def typed_input(self) -> TypedInput:
+        """The typed line."""
+        return self.part(TypedInput)
+
+    @property
+    def is_typing(self) -> bool:
+        """Whether the typed line is open."""
+        return self.typed_input.can_focus
+
+    def say(self, sentence: str) -> None:
+        """Put a sentence on the message line."""
+        self.part(MessageRow).show(sentence)
+
+    def complain(self, reason: object) -> None:
+        """Say that something was not done, and why."""
+        self.part(MessageRow).show(str(reason), is_complaint=True)
+
+    def ready(self) -> "Bench | None":
+        """Return the bench; if it is still being loaded, say so and return None."""
+        if self.bench is None:
+            self.say("still loading")
+        else:
+            self.wants_to_quit = False
+            self.settle()
+        return self.bench
+
+    def attempt(self, act: "Callable[[Bench], str | None]", *, is_edit: bool = False) -> bool:
+        """Do something to the bench; say what was done, or why not, and show the outcome."""
+        bench = self.ready()
+        if bench is None:
+            return False
+        try:
+            sentence = act(bench)
+        except TonebenchError as error:
+            self.complain(error)
+            return False
+        if is_edit:
+            self.show_edit()
+        if sentence is not None:
+            self.say(sentence)
+        self.show_status()
+        return True
+
+    # What the other parts of the application do; the actions call them by these names.
+    def settle(self) -> None:
+        """Apply arrow presses that still wait."""
+
+    def show_edit(self) -> None:
+        """Give the engine the chain as it is now, and draw it."""
+
+    def show_status(self) -> None:
+        """Draw the status row."""
+
+    @property
+    def status_row(self) -> StatusRow:
+        """The row on top."""
+        return self.part(StatusRow)
+
+    @property
+    def findings_panel(self) -> FindingsPanel:
+        """The findings."""
+        return self.part(FindingsPanel)
