@@ -3,7 +3,8 @@
 Nothing here or in the actions imports numpy or core when it is loaded: they are on the way to the first picture.
 """
 
-from collections.abc import Callable
+import contextlib
+import inspect
 from typing import TYPE_CHECKING, TypeVar
 
 from textual.app import App
@@ -15,6 +16,8 @@ from tonebench.screen.panels.rows import MessageRow, StatusRow
 from tonebench.screen.shell import TypedInput
 
 if TYPE_CHECKING:
+    from collections.abc import Callable
+
     from tonebench.screen.bench import Bench
 
 _Widget = TypeVar("_Widget", bound=Widget)
@@ -56,10 +59,34 @@ class BaseApp(App[None]):
     def say(self, sentence: str) -> None:
         """Put a sentence on the message line."""
         self.part(MessageRow).show(sentence)
+        self.fit_message()
 
     def complain(self, reason: object) -> None:
         """Say that something was not done, and why."""
         self.part(MessageRow).show(str(reason), is_complaint=True)
+        self.fit_message()
+
+    def fit_message(self) -> None:
+        """Give a long sentence a second row, that of the typed line or, while that is open, of the keys.
+
+        Nothing else moves.
+        """
+        message, screen = self.part(MessageRow), self.screen_stack[0]
+        is_two = message.needed > screen.size.width - 2
+        message.set_class(is_two, "-two")
+        screen.query_one("#typing").display = self.is_typing or not is_two
+        screen.query_one("#keys").display = not (self.is_typing and is_two)
+
+    def open_typed(self, text: str, sentence: str, *, is_selected: bool = False) -> None:
+        """Open the typed line, and say what it is for."""
+        self.typed_input.open(text, is_selected=is_selected)
+        self.say(sentence)
+        self.fit_message()
+
+    def close_typed(self) -> None:
+        """Close the typed line."""
+        self.typed_input.close()
+        self.fit_message()
 
     def ready(self) -> "Bench | None":
         """Return the bench; if it is still being loaded, say so and return None."""
@@ -86,6 +113,25 @@ class BaseApp(App[None]):
             self.say(sentence)
         self.show_status()
         return True
+
+    def hand_over(self, act: "Callable[..., object]", *values: object) -> None:
+        """Have something done by the screen, called from a thread; if the screen is gone, nothing is.
+
+        Never waits: a thread that waited for a screen that is being left would keep the program from ending.
+        """
+        with contextlib.suppress(RuntimeError):
+            self.call_later(self._unless_gone, act, *values)
+
+    async def _unless_gone(self, act: "Callable[..., object]", *values: object) -> None:
+        if not self.is_gone:
+            outcome = act(*values)
+            if inspect.isawaitable(outcome):
+                await outcome
+
+    @property
+    def is_gone(self) -> bool:
+        """Whether the screen is being left: timers and threads that come late find no panels any more."""
+        return not self.screen_stack
 
     # What the other parts of the application do; the actions call them by these names.
     def settle(self) -> None:

@@ -36,19 +36,44 @@ QUIETEST_LEVEL_DB = -120.0
 class Engine(Protocol):
     """What the screen needs of the engine's client; tests put a plain object in its place."""
 
-    def load_clip(self, frames: "NDArray[np.float32]", sample_rate_hz: float) -> None: ...
-    def set_coefficients(self, coefficients: Coefficients) -> None: ...
-    def play(self) -> None: ...
-    def stop(self) -> None: ...
-    def rearm(self) -> None: ...
-    def set_muted(self, is_muted: bool) -> None: ...
-    def set_level_db(self, level_db: float) -> None: ...
-    def set_hear(self, what: str) -> None: ...
-    def set_loop(self, start_frame: int, end_frame: int) -> None: ...
-    def set_ceiling_db(self, ceiling_db: float) -> None: ...
-    def status(self) -> "EngineStatus": ...
-    def recent(self, frames: int) -> "tuple[NDArray[np.float32], NDArray[np.float32]]": ...
-    def close(self) -> None: ...
+    def load_clip(self, frames: "NDArray[np.float32]", sample_rate_hz: float) -> None:
+        """Play these frames."""
+
+    def set_coefficients(self, coefficients: Coefficients) -> None:
+        """Run this chain."""
+
+    def play(self) -> None:
+        """Play."""
+
+    def stop(self) -> None:
+        """Stop."""
+
+    def rearm(self) -> None:
+        """Take the guard back in."""
+
+    def set_muted(self, is_muted: bool) -> None:
+        """Mute, or unmute."""
+
+    def set_level_db(self, level_db: float) -> None:
+        """Set the level."""
+
+    def set_hear(self, what: str) -> None:
+        """Hear input, output or change."""
+
+    def set_loop(self, start_frame: int, end_frame: int) -> None:
+        """Loop between two frames."""
+
+    def set_ceiling_db(self, ceiling_db: float) -> None:
+        """Set the guard's ceiling."""
+
+    def status(self) -> "EngineStatus":
+        """Return what it does now."""
+
+    def recent(self, frames: int) -> "tuple[NDArray[np.float32], NDArray[np.float32]]":
+        """Return the last frames before and after the chain."""
+
+    def close(self) -> None:
+        """End its process."""
 
 
 @dataclass(slots=True)
@@ -223,9 +248,7 @@ class Bench:
             raise InvalidValueError("this preset has no file yet; type save and a name, such as save mine.toml")
         is_own = self.path is not None and _is_same(destination, self.path)
         preset = self.session.preset
-        written = save_preset(
-            preset, destination, like=None if is_own else self.like, is_forced=is_own or is_forced
-        )
+        written = save_preset(preset, destination, like=None if is_own else self.like, is_forced=is_own or is_forced)
         # Edits made while the file was written stay unsaved.
         self.session.mark_saved(replace(preset, written_hearing=written.written_hearing))
         self.path, self.like = destination, None

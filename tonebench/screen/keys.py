@@ -87,9 +87,9 @@ KEYS: Final = tuple(key for _, keys in GROUPS for key in keys)
 
 # Pairs that the row of hints writes together, and the order there: what is needed most comes first, since a narrow
 # terminal cuts the row at its end. Help and quit are always there.
-_HINTS: Final = (
-    ("Space", "play"), ("←→", "pitch"), ("↑↓", "ring"), ("-=", "gain"), ("[]", "step"), ("Enter", "type"),
-    ("Tab", "section"), ("a", "add"), ("S", "save"), ("u", "undo"), ("p", "peak"), ("m", "mute"), ("iod", "hear"),
+_HINTS: Final[tuple[tuple[str, str], ...]] = (
+    ("Space", "play"), ("←→", "pitch"), ("↑↓", "ring"), ("-=", "gain"), ("Enter", "type"), ("a", "add"),
+    ("[]", "step"), ("Tab", "section"), ("S", "save"), ("u", "undo"), ("p", "peak"), ("m", "mute"), ("iod", "hear"),
     ("{}", "level"), ("g", "chart"), ("b", "bypass"), ("x", "remove"), ("<>", "move"), ("e", "export"),
     ("f", "findings"), ("U", "redo"),
 )  # fmt: skip
@@ -97,7 +97,7 @@ _ALWAYS: Final = (("?", "help"), ("q", "quit"))
 _GAP: Final = "  "
 
 # ASCII terminals have no arrows.
-PLAIN_ARROWS: Final = str.maketrans({"←": "<-", "→": "->", "↑": "^", "↓": "v"})
+PLAIN_ARROWS: Final = str.maketrans({"←": "<-", "→": " ->", "↑": "up", "↓": " down"})
 
 
 def bindings() -> list[Binding]:

@@ -6,13 +6,14 @@ Runs in a thread. Imports stand inside the functions, because this module is on 
 import re
 import sys
 import threading
-from collections.abc import Callable
 from contextlib import redirect_stderr
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
+    from collections.abc import Callable
+
     from tonebench.files.clips import Clip
     from tonebench.files.presets import LoadedPreset
     from tonebench.screen.bench import Bench, Engine
@@ -41,9 +42,7 @@ class Loader:
 
     """
 
-    def __init__(
-        self, wanted: Wanted, make_engine: "Callable[[str | int | None], Engine] | None" = None
-    ) -> None:
+    def __init__(self, wanted: Wanted, make_engine: "Callable[[str | int | None], Engine] | None" = None) -> None:
         self._wanted = wanted
         self._make_engine = make_engine or _engine_client
         self._lock = threading.Lock()

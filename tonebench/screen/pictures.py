@@ -117,8 +117,8 @@ def _row(section: "Section", number: int, sample_rate_hz: float, note: str) -> C
     if isinstance(poles, ConjugatePair) and is_on_rim(poles.radius):
         ring = "on the rim"
     elif isinstance(poles, ConjugatePair):
-        word = "grows in" if poles.radius > 1.0 else "ring"
-        ring = f"{word} {format_ring(ring_from_radius(poles.radius, sample_rate_hz))}"
+        word = "grows in " if poles.radius > 1.0 else ""
+        ring = f"{word}{format_ring(ring_from_radius(poles.radius, sample_rate_hz))}"
     elif isinstance(made, ByKind) and made.width is not None:
         ring = format_width(made.width.key, made.width.value)
     else:

@@ -30,6 +30,7 @@ class ReadingScreen(ModalScreen[None]):
         Binding("down", "scroll(1)", show=False),
         Binding("pageup", "scroll(-10)", show=False),
         Binding("pagedown,space", "scroll(10)", show=False),
+        Binding("m", "app.mute", show=False),  # silence must be one key away, whatever lies over the screen
         Binding("tab,shift+tab", "nothing", show=False, priority=True),
     ]
     DEFAULT_CSS = """

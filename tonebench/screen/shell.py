@@ -28,28 +28,29 @@ CSS: Final = """
 Screen { layout: vertical; overflow: hidden; }
 #main { layout: horizontal; height: 1fr; }
 #charts { width: 1fr; height: 100%; }
-#side { width: 46; height: 100%; }
+#side { width: 50; height: 100%; }
 #rim { height: 2fr; }
 #response, #spectrum { height: 1fr; }
 .-last { border-bottom: solid $foreground 35%; }
 #chain { height: 1fr; }
-#pole { height: 11; }
+#pole { height: 9; }
 #findings { height: 1fr; }
 #typing { height: 1; }
 #prompt { width: 3; height: 1; }
 #line { height: 1; width: 1fr; border: none; padding: 0; background: transparent; }
 #line:focus { border: none; background-tint: transparent 0%; }
 #typing { layout: horizontal; }
+#message.-two { height: 2; }
 
 .-huge #side { width: 62; }
-.-low #pole { height: 8; }
+.-low #pole { height: 9; }
 .-low #chain { height: 1fr; }
-.-low #findings { height: 6; }
+.-low #findings { height: 5; }
 
 .-narrow #main { layout: vertical; }
 .-narrow #charts { height: 1fr; width: 100%; }
-.-narrow #side { width: 100%; height: 11; layout: grid; grid-size: 2 2; grid-columns: 1fr 1fr; grid-rows: 9 2; }
-.-narrow #chain, .-narrow #pole { height: 9; }
+.-narrow #side { width: 100%; height: 11; layout: grid; grid-size: 2 2; grid-columns: 11fr 10fr; grid-rows: 9 2; }
+.-narrow #chain, .-narrow #pole { height: 9; padding: 0; }
 .-narrow #findings { column-span: 2; height: 2; border: none; padding: 0 1; }
 .-tiny #side { height: 5; grid-size: 2 1; grid-rows: 5; }
 .-tiny #chain, .-tiny #pole { height: 5; }

@@ -61,7 +61,7 @@ def read_command(line: str) -> Command | None:
     word, is_forced = first.lower().removesuffix("!"), first.endswith("!")
     if word in ("save", "open", "export", "quit"):
         return _about_files(word, _split(rest), is_forced)
-    if word == "level" or word == "ceiling":
+    if word in ("level", "ceiling"):
         return Command(word, numbers=_numbers(word, rest, 1))
     if word == "loop":
         if rest.strip().lower() == "off":

@@ -72,7 +72,7 @@ class FindingsPanel(Panel):
         if self._findings is None:
             return Content(self.spell(f"looking {ELLIPSIS}"))
         if not self._findings:
-            return Content("nothing found")
+            return Content("no findings")
         blocks = [self._block(one, width) for one in self._findings]
         shown: list[str] = []
         count = 0

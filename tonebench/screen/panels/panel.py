@@ -58,7 +58,8 @@ def cut(text: str, width: int) -> str:
 
 def wrap(text: str, width: int, indent: str = "") -> list[str]:
     """Return lines of at most this width, broken at spaces where there are any; later lines are indented."""
-    lines, line = [], ""
+    lines: list[str] = []
+    line = ""
     for word in text.split():
         lead = indent if lines else ""
         candidate = f"{line} {word}" if line else lead + word

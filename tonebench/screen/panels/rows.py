@@ -62,23 +62,38 @@ class StatusRow(Panel):
 
 
 def fitted(left: Sequence[Fact], right: Sequence[Fact], width: int) -> tuple[list[Fact], list[Fact]]:
-    """Return the facts that fit: first some are shortened, then some are left out, the highest rank first."""
+    """Return the facts that fit: the least important go, then some are shortened, then more of them go.
+
+    So an alarm, of rank 0, keeps its full words as long as anything else can give way.
+    """
     kept = [[*left], [*right]]
-
-    def length() -> int:
-        rows = [sum(len(one.text) for one in row) + len(_SEPARATOR) * max(len(row) - 1, 0) for row in kept]
-        return sum(rows) + (2 if all(rows) else 0)
-
-    for rank in range(max((one.rank for one in (*left, *right)), default=0), -1, -1):
-        for row in kept:
-            for place, one in enumerate(row):
-                if one.rank == rank and one.short and length() > width:
-                    row[place] = Fact(one.short, one.rank, is_loud=one.is_loud)
-    for rank in range(max((one.rank for one in (*left, *right)), default=0), 0, -1):
-        for row in kept:
-            if length() > width:
-                row[:] = [one for one in row if one.rank != rank]
+    _leave_out(kept, 10, width)
+    for rank in range(6, 0, -1):
+        _shorten(kept, rank, width)
+    for rank in range(9, 4, -1):
+        _leave_out(kept, rank, width)
+    _shorten(kept, 0, width)
+    for rank in range(4, 0, -1):
+        _leave_out(kept, rank, width)
     return kept[0], kept[1]
+
+
+def _length(rows: Sequence[Sequence[Fact]]) -> int:
+    lengths = [sum(len(one.text) for one in row) + len(_SEPARATOR) * max(len(row) - 1, 0) for row in rows]
+    return sum(lengths) + (2 if all(lengths) else 0)
+
+
+def _leave_out(rows: Sequence[list[Fact]], rank: int, width: int) -> None:
+    for row in rows:
+        if _length(rows) > width:
+            row[:] = [one for one in row if one.rank != rank]
+
+
+def _shorten(rows: Sequence[list[Fact]], rank: int, width: int) -> None:
+    for row in rows:
+        for place, one in enumerate(row):
+            if one.rank == rank and one.short and _length(rows) > width:
+                row[place] = Fact(one.short, one.rank, is_loud=one.is_loud)
 
 
 class MessageRow(Panel):
@@ -90,14 +105,22 @@ class MessageRow(Panel):
         self._is_complaint = False
 
     def show(self, text: str, *, is_complaint: bool = False) -> None:
-        """Show another sentence; a complaint starts with the word no."""
+        """Show another sentence; a complaint starts with the words not done."""
         self.text, self._is_complaint = " ".join(text.split()), is_complaint
         self.paint()
 
+    @property
+    def _words(self) -> str:
+        return f"not done: {self.text}" if self._is_complaint else self.text
+
+    @property
+    def needed(self) -> int:
+        """Columns that the whole sentence takes."""
+        return len(self._words)
+
     def draw(self, width: int, height: int) -> Content:
         """Draw the sentence, wrapped into the rows there are."""
-        words = f"not done: {self.text}" if self._is_complaint else self.text
-        lines = [self.spell(one) for one in _wrapped(words, width - 2, height)]
+        lines = [self.spell(one) for one in _wrapped(self._words, width - 2, height)]
         return Content("\n").join(Content.styled(f" {one}", "bold" if self._is_complaint else "") for one in lines)
 
 

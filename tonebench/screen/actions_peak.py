@@ -1,0 +1,54 @@
+"""The pole to the nearest spectral peak of the clip: searched in a thread, told in numbers."""
+
+from typing import TYPE_CHECKING
+
+from tonebench.errors import TonebenchError
+from tonebench.screen.actions_look import LookActions
+
+if TYPE_CHECKING:
+    from tonebench.hum.peaks import Peak
+    from tonebench.screen.bench import Bench
+
+
+class PeakActions(LookActions):
+    """What p does."""
+
+    def action_peak(self) -> None:
+        """Look for the peak nearest the selected pole."""
+        self.attempt(self._search)
+
+    def _search(self, bench: "Bench") -> str:
+        frequency_hz = bench.pole_frequency_hz()
+        section = bench.session.section
+        identity = section.identity if section is not None else 0
+
+        def run() -> None:
+            from tonebench.hum.peaks import nearest_peak  # noqa: PLC0415
+
+            try:
+                peak = nearest_peak(bench.clip.frames, bench.clip.sample_rate_hz, frequency_hz)
+            except TonebenchError as error:
+                self.hand_over(self.complain, error)
+            else:
+                self.hand_over(self._found, bench, identity, peak)
+
+        self.run_worker(run, thread=True, group="peak", exclusive=True)
+        return "looking for the nearest peak …"
+
+    def _found(self, bench: "Bench", identity: int, peak: "Peak | None") -> None:
+        section = bench.session.section
+        if section is None or section.identity != identity:
+            self.say("the peak was found, but another section is selected now: nothing was moved")
+            return
+        if peak is None:
+            self.say("no spectral peak stands out near this pole")
+            return
+        self.attempt(lambda bench: self._put(bench, peak), is_edit=True)
+
+    @staticmethod
+    def _put(bench: "Bench", peak: "Peak") -> str:
+        bench.put_pole(peak.frequency_hz)
+        return (
+            f"pole at the peak: {peak.frequency_hz:.3f} Hz, {peak.level_dbfs:.1f} dBFS, "
+            f"{peak.height_db:.1f} dB over its surroundings"
+        )
