@@ -317,3 +317,46 @@ def test_empty_chain_refuses_in_words() -> None:
             assert one.session.chain.sections == ()
 
     asyncio.run(run())
+
+
+def test_an_unforeseen_error_in_a_thread_takes_no_work_with_it(monkeypatch: pytest.MonkeyPatch) -> None:
+    """It is told in words; the screen goes on, the edit stays, and findings are looked for again."""
+
+    def fall_over(*_: object) -> None:
+        raise ZeroDivisionError("by hand")
+
+    async def run() -> None:
+        async with opened() as one:
+            with monkeypatch.context() as patched:
+                patched.setattr("tonebench.target.check.check_chain", fall_over)
+                await one.press("x")
+                await one.pilot.pause(0.3)
+                await one.settled()
+                assert "internal error (ZeroDivisionError: by hand)" in one.message
+            assert one.session.is_dirty
+            await one.press("b")
+            await one.pilot.pause(0.3)
+            await one.settled()
+            assert "…" not in str(one.app.findings_panel.border_title)
+
+    asyncio.run(run())
+
+
+def test_findings_are_those_of_the_newest_chain() -> None:
+    """Edits while a thread is at work are not lost, and older findings are never shown as new."""
+
+    async def run() -> None:
+        async with opened() as one:
+            for _ in range(5):
+                await one.press("right")
+            await one.type_line("free poles 1.001 at 7.5 deg")
+            assert str(one.app.findings_panel.border_title).endswith("…")
+            for _ in range(100):
+                await one.pilot.pause(0.02)
+                if not one.app.findings_panel._is_pending:
+                    break
+            worst = one.app.findings_panel.findings[0]
+            assert worst.severity == "danger"
+            assert worst.section == 2
+
+    asyncio.run(run())

@@ -62,6 +62,16 @@ class Player:
         self.after = np.zeros((0, OUTPUT_CHANNELS))
 
     @property
+    def clip_frames(self) -> int:
+        """Length of the clip."""
+        return int(self._clip.shape[0])
+
+    @property
+    def channels(self) -> int:
+        """Channels of the clip and of the kernel."""
+        return self._kernel.channels
+
+    @property
     def is_idle(self) -> bool:
         """Whether the player stands still and nothing comes through."""
         return not self.is_wanted and self.guard.is_closed

@@ -99,16 +99,7 @@ class FileActions(EditActions, SoundActions):
             self.complain(f"a preset's name must end in .toml, got {path.name}; type save {path.name}.toml")
             return False
         self.say("saving …")
-
-        def run() -> None:
-            try:
-                sentence = bench.save(path, is_forced=is_forced)
-            except TonebenchError as error:
-                self.hand_over(self.complain, error)
-            else:
-                self.hand_over(self._saved, sentence)
-
-        self.run_worker(run, thread=True, group="files")
+        self.in_thread(lambda: bench.save(path, is_forced=is_forced), self._saved)
         return True
 
     def _saved(self, sentence: str) -> None:
@@ -120,19 +111,7 @@ class FileActions(EditActions, SoundActions):
             self.complain("there is unsaved work: S saves it, or type open! to leave it behind")
             return False
         self.say(f"opening {name} …")
-
-        def run() -> None:
-            from tonebench.files.bundled import find_preset  # noqa: PLC0415
-            from tonebench.files.presets import load_preset  # noqa: PLC0415
-
-            try:
-                loaded = load_preset(find_preset(name))
-            except TonebenchError as error:
-                self.hand_over(self.complain, error)
-            else:
-                self.hand_over(self._opened, bench, name, loaded)
-
-        self.run_worker(run, thread=True, group="files")
+        self.in_thread(lambda: _load(name), lambda loaded: self._opened(bench, name, loaded))
         return True
 
     def _opened(self, bench: "Bench", name: str, loaded: "LoadedPreset") -> None:
@@ -164,3 +143,10 @@ class FileActions(EditActions, SoundActions):
         if bench is not None:
             bench.engine.stop()  # silence first: the engine itself is closed when the screen is gone
         self.exit()
+
+
+def _load(name: str) -> "LoadedPreset":
+    from tonebench.files.bundled import find_preset  # noqa: PLC0415
+    from tonebench.files.presets import load_preset  # noqa: PLC0415
+
+    return load_preset(find_preset(name))

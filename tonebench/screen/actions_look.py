@@ -1,7 +1,6 @@
 """Findings, help, and clicks. Findings are looked for off the key's path, and the newest question wins."""
 
 import math
-import threading
 from typing import TYPE_CHECKING, Final
 
 from tonebench.screen.actions_view import ViewActions
@@ -24,46 +23,36 @@ class LookActions(ViewActions):
     _asked: "Preset | None" = None
     _closing_words: str = ""
     _is_waiting_for_findings: bool = False
-    _findings_lock = threading.Lock()
     _is_checking: bool = False
 
     def ask_findings(self) -> None:
         """Ask for the findings of the preset as it is; the newest question wins."""
+        if self.bench is None:
+            return
         self.part(FindingsPanel).set_pending()
-        if self.bench is not None:
-            with self._findings_lock:
-                self._asked = self.bench.session.preset
+        self._asked = self.bench.session.preset
         if not self._is_waiting_for_findings:
             self._is_waiting_for_findings = True
             self.set_timer(FINDINGS_DELAY_S, self._check)
 
     def _check(self) -> None:
         self._is_waiting_for_findings = False
-        if self.is_gone:
-            return
-        with self._findings_lock:
-            if self._is_checking:
-                return  # that thread looks for a newer question before it ends
-            self._is_checking = True
-        self.run_worker(self._check_in_thread, thread=True, group="findings")
+        preset = self._asked
+        if self.is_gone or self._is_checking or preset is None:
+            return  # whoever is checking looks for a newer question at the end
+        self._asked, self._is_checking = None, True
+        self.in_thread(lambda: _find(preset), lambda found: self._have_findings(preset, *found), self._checked)
 
-    def _check_in_thread(self) -> None:
-        from tonebench.screen.wording import finding_words  # noqa: PLC0415
-        from tonebench.target.check import NOT_YET_JUDGED, check_chain  # noqa: PLC0415
-
-        self._closing_words = NOT_YET_JUDGED
-        while True:
-            with self._findings_lock:
-                preset, self._asked = self._asked, None
-                if preset is None:
-                    self._is_checking = False
-                    return
-            found = check_chain(preset.chain, preset.target, preset.build_rates_hz, preset.acceptances)
-            self.hand_over(self._have_findings, preset, finding_words(found))
-
-    def _have_findings(self, preset: "Preset", found: list[FindingWords]) -> None:
+    def _have_findings(self, preset: "Preset", found: list[FindingWords], closing: str) -> None:
+        self._closing_words = closing
         if self.bench is not None and self.bench.session.preset is preset:
             self.part(FindingsPanel).show(found, str(preset.target))
+        self._checked()
+
+    def _checked(self) -> None:
+        self._is_checking = False
+        if not self._is_waiting_for_findings:
+            self._check()
 
     def action_findings(self) -> None:
         """Show all findings."""
@@ -108,3 +97,12 @@ class LookActions(ViewActions):
             near = sorted(poles, key=lambda mark: abs(math.log(max(mark.frequency_hz, 1.0)) - pitch))
         if near:
             self.select_section(near[0].section_number - 1)
+
+
+def _find(preset: "Preset") -> tuple[list[FindingWords], str]:
+    """Return the findings in words, and what was not judged; the caller is a thread."""
+    from tonebench.screen.wording import finding_words  # noqa: PLC0415
+    from tonebench.target.check import NOT_YET_JUDGED, check_chain  # noqa: PLC0415
+
+    found = check_chain(preset.chain, preset.target, preset.build_rates_hz, preset.acceptances)
+    return finding_words(found), NOT_YET_JUDGED

@@ -2,7 +2,6 @@
 
 from typing import TYPE_CHECKING
 
-from tonebench.errors import TonebenchError
 from tonebench.screen.actions_look import LookActions
 
 if TYPE_CHECKING:
@@ -22,17 +21,12 @@ class PeakActions(LookActions):
         section = bench.session.section
         identity = section.identity if section is not None else 0
 
-        def run() -> None:
+        def search() -> "Peak | None":
             from tonebench.hum.peaks import nearest_peak  # noqa: PLC0415
 
-            try:
-                peak = nearest_peak(bench.clip.frames, bench.clip.sample_rate_hz, frequency_hz)
-            except TonebenchError as error:
-                self.hand_over(self.complain, error)
-            else:
-                self.hand_over(self._found, bench, identity, peak)
+            return nearest_peak(bench.clip.frames, bench.clip.sample_rate_hz, frequency_hz)
 
-        self.run_worker(run, thread=True, group="peak", exclusive=True)
+        self.in_thread(search, lambda peak: self._found(bench, identity, peak))
         return "looking for the nearest peak …"
 
     def _found(self, bench: "Bench", identity: int, peak: "Peak | None") -> None:

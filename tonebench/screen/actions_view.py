@@ -183,16 +183,16 @@ class ViewActions(FileActions):
 
     def find_long_term(self) -> None:
         """Find the clip's long-term spectrum in a thread, once per clip."""
+        bench = self.bench
+        if bench is None:
+            return
 
-        def run() -> None:
+        def find() -> "Curve | None":
             from tonebench.screen import spectra  # noqa: PLC0415
 
-            if self.bench is not None:
-                clip = self.bench.clip
-                curve = spectra.long_term_curve(clip.frames, clip.sample_rate_hz)
-                self.hand_over(self._have_long_term, curve)
+            return spectra.long_term_curve(bench.clip.frames, bench.clip.sample_rate_hz)
 
-        self.run_worker(run, thread=True, group="spectrum")
+        self.in_thread(find, self._have_long_term)
 
     def _have_long_term(self, curve: "Curve | None") -> None:
         self._before = curve

@@ -20,6 +20,7 @@ if TYPE_CHECKING:
 
     from tonebench.screen.bench import Bench
 
+_Outcome = TypeVar("_Outcome")
 _Widget = TypeVar("_Widget", bound=Widget)
 
 
@@ -121,6 +122,31 @@ class BaseApp(App[None]):
         """
         with contextlib.suppress(RuntimeError):
             self.call_later(self._unless_gone, act, *values)
+
+    def in_thread(
+        self,
+        work: "Callable[[], _Outcome]",
+        done: "Callable[[_Outcome], object]",
+        failed: "Callable[[], object]" = lambda: None,
+    ) -> None:
+        """Do work in a thread, and hand its outcome to the screen; a failure is told, and the work on the bench stays.
+
+        An error that nobody foresaw must not take unsaved work with it, so it is told like the others.
+        """
+
+        def run() -> None:
+            try:
+                outcome = work()
+            except TonebenchError as error:
+                self.hand_over(self.complain, error)
+                self.hand_over(failed)
+            except Exception as error:  # noqa: BLE001 - see above
+                self.hand_over(self.complain, f"internal error ({type(error).__name__}: {error}); nothing is lost")
+                self.hand_over(failed)
+            else:
+                self.hand_over(done, outcome)
+
+        self.run_worker(run, thread=True)
 
     async def _unless_gone(self, act: "Callable[..., object]", *values: object) -> None:
         if not self.is_gone:

@@ -1,0 +1,12 @@
+"""Where the spawned process begins: it loads scipy only here, so that the screen's side never does."""
+
+from multiprocessing.connection import Connection
+
+from tonebench.engine.messages import Options
+
+
+def run_child(connection: Connection, options: Options) -> None:
+    """Run the engine in this process until the parent closes it."""
+    from tonebench.engine.child import run  # noqa: PLC0415  (scipy)
+
+    run(connection, options)
