@@ -29,8 +29,8 @@ def caution_lines(numbers: Hearing) -> list[str]:
         first = "this chain is unstable: its output can grow without bound. Do not listen to it without a guard."
     else:
         first = (
-            f"this chain changes a tone by at most {numbers.largest_gain_db:+.1f} dB, and no input comes out more than "
-            f"{_db(numbers.worst_peak_db)} over its own peak."
+            f"this chain changes a tone by at most {numbers.largest_gain_db:+.1f} dB, and the peak of any sound by at most "
+            f"{_db(numbers.worst_peak_db)}."
         )
     sentences = [
         first,

@@ -240,7 +240,7 @@ def _by_hand(table: Reader) -> ByHand:
         if key in table.values:
             table.refuse(key, f"{key} has no meaning for a free section; give poles and zeros")
     gain_at_hz = table.number("gain_at_hz", None)
-    gain_db = table.number("gain_db")
+    gain_db = table.number("gain_db", 0.0)
     poles, zeros = _roots(table, "poles"), _roots(table, "zeros")
     made: ByHand = table.attempt("kind", lambda: ByHand(poles, zeros, gain_db, gain_at_hz))
     return made
