@@ -29,8 +29,8 @@ def caution_lines(numbers: Hearing) -> list[str]:
         first = "this chain is unstable: its output can grow without bound. Do not listen to it without a guard."
     else:
         first = (
-            f"this chain changes a tone by at most {numbers.largest_gain_db:+.1f} dB, and the peak of any sound by at most "
-            f"{_db(numbers.worst_peak_db)}."
+            f"this chain changes a tone by at most {numbers.largest_gain_db:+.1f} dB, and the peak of any sound by "
+            f"at most {_db(numbers.worst_peak_db)}."
         )
     sentences = [
         first,
