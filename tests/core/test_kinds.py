@@ -107,7 +107,8 @@ def test_butterworth_is_scipys(kind: Kind, name: str, frequency_hz: float) -> No
 
 
 @pytest.mark.parametrize(
-    ("frequency_hz", "scipy_q", "printed"), [(1000.0, 30.0, 29.914352), (8000.0, 2.0, 1.616025), (15000.0, 1.0, 0.308658)]
+    ("frequency_hz", "scipy_q", "printed"),
+    [(1000.0, 30.0, 29.914352), (8000.0, 2.0, 1.616025), (15000.0, 1.0, 0.308658)],
 )
 @pytest.mark.parametrize("kind", [Kind.NOTCH, Kind.BAND_PASS, Kind.RESONATOR])
 def test_notch_and_band_pass_are_scipys(kind: Kind, frequency_hz: float, scipy_q: float, printed: float) -> None:
@@ -143,7 +144,9 @@ def test_shelves_are_half_way_at_f0_and_whole_at_the_end(kind: Kind, gain_db: fl
 def test_shelf_slope_of_one_is_q_of_root_half(kind: Kind, gain_db: float) -> None:
     """S = 1 ⇔ Q = 1/√2 for every A, and is monotone; S = 1.3 at 9 dB overshoots by 0.150 dB (facts.md 5.1)."""
     grid = np.geomspace(1.0, 23999.0, 4000)
-    levels = 20.0 * np.log10(np.abs(chain_response(chain_of(by_kind(kind, 1000.0, ("q", math.sqrt(0.5)), gain_db)), grid)))
+    levels = 20.0 * np.log10(
+        np.abs(chain_response(chain_of(by_kind(kind, 1000.0, ("q", math.sqrt(0.5)), gain_db)), grid))
+    )
     steps = np.diff(levels) * math.copysign(1.0, gain_db) * (1.0 if kind is Kind.HIGH_SHELF else -1.0)
     assert steps.min() > -1e-9  # rounding of a flat end
     a = 10.0 ** (9.0 / 40.0)

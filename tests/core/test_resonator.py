@@ -99,7 +99,9 @@ def _peak_hz(poles: ConjugatePair) -> float:
 
 def test_trap_of_the_peak_beside_the_pole() -> None:
     """facts.md 6: r = .99, theta = .05 with zeros at ±1 peaks at .050999 rad."""
-    made = ByKind(Kind.RESONATOR, 0.05 * RATE_HZ / (2.0 * math.pi), Width(WidthKey.RADIUS, 0.99), is_pole_frequency=True)
+    made = ByKind(
+        Kind.RESONATOR, 0.05 * RATE_HZ / (2.0 * math.pi), Width(WidthKey.RADIUS, 0.99), is_pole_frequency=True
+    )
     grid = np.linspace(0.0500, 0.0520, 20001)
     level = np.abs(chain_response(chain_of(Section(made)), grid * RATE_HZ / (2.0 * math.pi)))
     assert grid[int(np.argmax(level))] == pytest.approx(0.050999, abs=6e-7)  # printed to six places, grid of 1e-7
@@ -108,7 +110,9 @@ def test_trap_of_the_peak_beside_the_pole() -> None:
 def test_too_wide_at_its_pole_is_refused() -> None:
     """Below Q = cos(theta)/2·… no conjugate pair has that Q: the message asks to narrow it."""
     made = ByKind(Kind.RESONATOR, 1000.0, Width(WidthKey.Q, 0.4), is_pole_frequency=True)
-    with pytest.raises(ValueError, match=r"^q must be narrow enough for conjugate poles at this angle, got 0\.4; narrow"):
+    with pytest.raises(
+        ValueError, match=r"^q must be narrow enough for conjugate poles at this angle, got 0\.4; narrow"
+    ):
         realise(Section(made), RATE_HZ)
 
 

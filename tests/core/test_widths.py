@@ -142,7 +142,9 @@ def test_too_short_a_ring_is_refused_with_the_range(factor: float) -> None:
     ring_s = math.log(1000.0) / (-math.log(limit) * 48000.0)
     with pytest.raises(InvalidValueError, match=rf"^section 1: ring_s must be over {ring_s:.4g} s here .*q instead$"):
         chain_of(by_kind(Kind.NOTCH, 1000.0, ("ring_s", factor * ring_s)))
-    chain_of(by_kind(Kind.NOTCH, 1000.0, ("radius", 1.001 * limit)), by_kind(Kind.NOTCH, 1000.0, ("ring_s", 1.001 * ring_s)))
+    chain_of(
+        by_kind(Kind.NOTCH, 1000.0, ("radius", 1.001 * limit)), by_kind(Kind.NOTCH, 1000.0, ("ring_s", 1.001 * ring_s))
+    )
 
 
 def test_other_ranges_are_refused() -> None:

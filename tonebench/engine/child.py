@@ -61,7 +61,7 @@ class _Engine:
         self._retry_at = 0.0
         self._idle_since = time.monotonic()
         self._is_done = False
-        self._said = ("", "", False)
+        self._said = ("", "")
 
     def serve(self) -> None:
         """Work until told to stop."""
@@ -144,7 +144,7 @@ class _Engine:
         self._close_output()
         self._retry_at = now + _RETRY_S
         self._shared.meters[Meter.PHASE] = PHASES.index("faulted")
-        self._say("", "the sound device is gone; trying again every second, the work goes on", is_device=True)
+        self._say("", "the sound device is gone; trying again every second, the work goes on")
 
     def _open(self) -> None:
         if self._callback is None:
@@ -155,14 +155,14 @@ class _Engine:
         if isinstance(opened, str):
             self._retry_at = time.monotonic() + _RETRY_S
             self._shared.meters[Meter.PHASE] = PHASES.index("faulted")
-            self._say("", opened, is_device=True)
+            self._say("", opened)
             return
         self._output = opened
         self._idle_since = time.monotonic()
         self._shared.meters[Meter.IS_DEVICE] = float(opened.is_device)
         look_ahead = self._callback.player.guard.look_ahead_frames / self._rate_hz
         self._shared.meters[Meter.LATENCY_MS] = 1000.0 * (look_ahead + opened.latency_s)
-        self._say(opened.name, opened.message, is_device=opened.is_device)
+        self._say(opened.name, opened.message)
 
     def _close_output(self) -> None:
         if self._output is not None:
@@ -171,8 +171,8 @@ class _Engine:
             if self._callback is not None:
                 self._shared.meters[Meter.PHASE] = PHASES.index("stopped")
 
-    def _say(self, device_name: str, message: str, *, is_device: bool) -> None:
-        said = (device_name, message, is_device)
+    def _say(self, device_name: str, message: str) -> None:
+        said = (device_name, message)
         if said != self._said:
             self._said = said
             self._connection.send(said)

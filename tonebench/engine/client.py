@@ -115,7 +115,7 @@ class EngineClient:
         self._clip_number = 0
         self._rate_hz = 0.0
         self._coefficients: Coefficients | None = None
-        self._device_name, self._message, self._is_device = "", "", False
+        self._device_name, self._message = "", ""
         self._captured = 0
         self._lost = 0
         self._is_closed = False
@@ -246,7 +246,7 @@ class EngineClient:
         is_ready = int(meters[Meter.CLIP_NUMBER]) == self._clip_number and self._clip_number > 0
         return EngineStatus(
             phase=PHASES[int(meters[Meter.PHASE])] if is_ready else "starting",
-            is_sounding_device=self._is_device,
+            is_sounding_device=bool(meters[Meter.IS_DEVICE]),
             device_name=self._device_name,
             message=self._message,
             position_frame=int(meters[Meter.POSITION]),
@@ -273,7 +273,7 @@ class EngineClient:
     def _listen(self) -> None:
         with contextlib.suppress(EOFError, OSError):
             while self._connection.poll(0):
-                self._device_name, self._message, self._is_device = self._connection.recv()
+                self._device_name, self._message = self._connection.recv()
 
     def _revive(self) -> None:
         now = time.monotonic()

@@ -83,7 +83,8 @@ def open_output(wanted: Wanted) -> Output | str:
     sounddevice = load_sounddevice()
     if isinstance(sounddevice, str):
         return wanted.silent(sounddevice)
-    if wanted.shared.meters[Meter.IS_DEVICE]:
+    had_device = bool(wanted.shared.meters[Meter.IS_DEVICE])
+    if had_device:
         _look_again(sounddevice)
     try:
         stream = sounddevice.OutputStream(
@@ -95,9 +96,11 @@ def open_output(wanted: Wanted) -> Output | str:
             latency="low",
             callback=_stream_callback(wanted.callback, wanted.shared),
         )
+        wanted.shared.meters[Meter.IS_DEVICE] = 1.0  # before the first block says that it plays
         stream.start()
         name = str(sounddevice.query_devices(stream.device)["name"])
     except Exception as error:  # noqa: BLE001  (PortAudioError, ValueError, and what drivers make up)
+        wanted.shared.meters[Meter.IS_DEVICE] = float(had_device)
         return _failed(" ".join(str(error).split()), wanted, sounddevice)
     return Output(stream, name, "", is_device=True, latency_s=float(stream.latency), opened_s=time.monotonic())
 

@@ -15,6 +15,7 @@ SHORTEST_FRAMES = 256
 # The power of a noise bin is exponentially distributed: the largest of n stands 10·log10(ln n/ln 2) over the median,
 # 12.6 dB for the 2^18 bins of the longest part. What stands higher is no accident of noise.
 STANDS_OUT_DB = 14.0
+WITHIN_DB = 70.0  # of the strongest: what lies deeper is a skirt or a trace that nobody means (judgement)
 _LOBE_BINS = 4  # the Blackman–Harris window's main lobe reaches four bins to each side
 _AROUND_OCTAVES = 0.25
 _SILENCE = 1e-9  # −180 dBFS
@@ -52,7 +53,8 @@ def nearest_peak(samples: NDArray[np.floating], sample_rate_hz: float, near_hz: 
     Returns
     -------
     Peak or None
-        None where nothing stands out by ``STANDS_OUT_DB``, or the part is shorter than ``SHORTEST_FRAMES``.
+        None where nothing within ``WITHIN_DB`` of the strongest stands out by ``STANDS_OUT_DB``, or the part is
+        shorter than ``SHORTEST_FRAMES``.
 
     """
     mono = np.asarray(samples, dtype=np.float64)
@@ -66,9 +68,10 @@ def nearest_peak(samples: NDArray[np.floating], sample_rate_hz: float, near_hz: 
     windowed *= mono
     level_db = 20.0 * np.log10(np.maximum(np.abs(np.fft.rfft(windowed)) * scale, _SILENCE))
     step_hz = sample_rate_hz / mono.size
+    lowest_db = max(float(level_db.max()) - WITHIN_DB, 20.0 * math.log10(_SILENCE) + STANDS_OUT_DB)
     for bin_number in _candidates(level_db, near_hz / step_hz):
         height_db = level_db[bin_number] - _around_db(level_db, bin_number)
-        if height_db >= STANDS_OUT_DB and level_db[bin_number] > 20.0 * math.log10(_SILENCE) + STANDS_OUT_DB:
+        if height_db >= STANDS_OUT_DB and level_db[bin_number] > lowest_db:
             frequency_hz, amplitude = _refined(windowed, sample_rate_hz, bin_number)
             level = 20.0 * math.log10(max(amplitude * scale, _SILENCE))
             return Peak(frequency_hz, level, float(level - _around_db(level_db, bin_number)))
