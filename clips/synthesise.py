@@ -75,7 +75,8 @@ def band(generator: np.random.Generator, frames: int, low_hz: float, high_hz: fl
     """Return noise of one band, root mean square 1."""
     sos = signal.butter(2, (low_hz, high_hz), "bandpass", fs=SAMPLE_RATE_HZ, output="sos")
     noise: Samples = signal.sosfilt(sos, generator.standard_normal(frames))
-    return noise / np.sqrt(np.mean(noise**2))
+    loudness: float = np.sqrt(np.mean(noise**2))
+    return noise / loudness
 
 
 def boathouse() -> Samples:

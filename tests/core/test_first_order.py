@@ -22,7 +22,7 @@ FIRST_ORDER = [kind for kind in Kind if has_first_order(kind)]
 
 @given(st.data(), st.sampled_from(FIRST_ORDER), rates_hz, gains_db)
 def test_coefficients_are_the_prototypes(data: st.DataObject, kind: Kind, rate_hz: float, gain_db: float) -> None:
-    """b and a of every kind; near half the rate tan multiplies a rounding by 34 (see test_kinds): 5e-14."""
+    """B and a of every kind; near half the rate tan multiplies a rounding by 34 (see test_kinds): 5e-14."""
     frequency_hz = data.draw(frequencies_hz(rate_hz))
     gain_db = gain_db if has_gain(kind) else 0.0
     b, a = oracles.first_order(PUBLISHED[kind], frequency_hz, rate_hz, gain_db)

@@ -43,7 +43,7 @@ def largest_error(found: tuple[float, ...], wanted: oracles.Polynomial) -> float
 @example((by_kind(Kind.PEAK, 1000.0, ("q", 2.0), 12.0), 48000.0))
 @example((by_kind(Kind.LOW_PASS, 5.0, ("q", 100.0)), 192000.0))
 def test_coefficients_are_the_published_ones(case: tuple[Section, float]) -> None:
-    """b and a of every kind; measured worst 1.4e-14 of the largest coefficient.
+    """B and a of every kind; measured worst 1.4e-14 of the largest coefficient.
 
     Near half the rate tan(w0/2) multiplies the rounding of w0 by w0/sin w0, at most 34 at 0.47 fs: 34 × 1.1e-16 and
     a dozen roundings of the same size give 5e-14.

@@ -42,6 +42,12 @@ example:
 class Parser(argparse.ArgumentParser):
     """An argument parser whose complaint is one line that says what to do."""
 
+    commands: "tuple[Parser, ...]" = ()  # the parsers below this one: it reports what they do not know
+
+    def options(self) -> list[str]:
+        """Return every option of this parser."""
+        return [option for action in self._actions for option in action.option_strings]
+
     def error(self, message: str):  # type: ignore[no-untyped-def]  # noqa: ANN201  (NoReturn would load typing)
         """Print one line and leave with exit code 2."""
         hint = self._did_you_mean(message)
@@ -53,7 +59,7 @@ class Parser(argparse.ArgumentParser):
         """Suggest the option closest to one that argparse did not know."""
         import difflib  # noqa: PLC0415  (only for the unlucky)
 
-        known = [option for action in self._actions for option in action.option_strings]
+        known = [option for parser in (self, *self.commands) for option in parser.options()]
         for word in message.split():
             near = difflib.get_close_matches(word.partition("=")[0], known, n=1, cutoff=0.6)
             if word.startswith("--") and near and near[0] != word:
@@ -71,15 +77,15 @@ def build_parser(command: str | None) -> argparse.ArgumentParser:
         allow_abbrev=False,
     )
     parser.add_argument("--version", action="version", version=f"tonebench {__version__}")
-    commands = parser.add_subparsers(metavar="COMMAND", dest="command", parser_class=Parser)
+    subparsers = parser.add_subparsers(metavar="COMMAND", dest="command", parser_class=Parser)
     for name, words in COMMANDS.items():
         if name != command:
-            commands.add_parser(name, help=words, add_help=False)
+            subparsers.add_parser(name, help=words, add_help=False)
             continue
         from textwrap import fill  # noqa: PLC0415  (argparse loads it too, but only when it must)
 
         module = _command_module(name)
-        chosen = commands.add_parser(
+        chosen = subparsers.add_parser(
             name,
             help=words,
             description=fill(module.DESCRIPTION, 78),
@@ -89,6 +95,7 @@ def build_parser(command: str | None) -> argparse.ArgumentParser:
         )
         module.add_arguments(chosen)
         chosen.set_defaults(run=module.run)
+        parser.commands = (chosen,)
     return parser
 
 
