@@ -25,7 +25,10 @@ class TerminalSession:
     def tmux(self, *arguments: str) -> str:
         """Run one command of this server."""
         command = ["tmux", "-L", self.server, *arguments]
-        return subprocess.run(command, capture_output=True, text=True, check=True, timeout=20).stdout
+        # readline, which pytest loads, puts its own idea of a size into these two; the program would believe it.
+        environment = {name: value for name, value in os.environ.items() if name not in ("COLUMNS", "LINES")}
+        done = subprocess.run(command, env=environment, capture_output=True, text=True, check=True, timeout=20)
+        return done.stdout
 
     def keys(self, *names: str) -> None:
         """Press keys, by tmux's names."""

@@ -90,4 +90,7 @@ def _roots_at(roots: Roots, ratio: float) -> Roots:
 
 
 def _power(radius: float, ratio: float) -> float:
-    return 0.0 if radius == 0.0 else float(radius**ratio)
+    """Return radius^ratio; a root too far out for a double is held at the largest one."""
+    if radius == 0.0:
+        return 0.0
+    return math.exp(min(ratio * math.log(radius), 700.0))

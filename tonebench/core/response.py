@@ -36,16 +36,23 @@ def section_response(realised: PoleZero, omega_rad: NDArray[np.float64]) -> NDAr
 def combined_response(
     parts: list[NDArray[np.complex128]], combine: str, gain: float, direct_gain: float, frames: int
 ) -> NDArray[np.complex128]:
-    """Combine section responses the way a chain combines its sections."""
-    if combine == "sum":
-        total = np.full(frames, complex(direct_gain), dtype=np.complex128)
-        for part in parts:
-            total += part
-    else:
-        total = np.ones(frames, dtype=np.complex128)
-        for part in parts:
-            total *= part
-    return total * gain
+    """Combine section responses the way a chain combines its sections; infinite where a part is."""
+    with np.errstate(all="ignore"):
+        if combine == "sum":
+            total = np.full(frames, complex(direct_gain), dtype=np.complex128)
+            for part in parts:
+                total += part
+        else:
+            total = np.ones(frames, dtype=np.complex128)
+            for part in parts:
+                total *= part
+        total *= gain
+    is_infinite = np.zeros(frames, dtype=np.bool_)
+    for part in parts:
+        is_infinite |= np.isinf(np.abs(part))
+    # Complex products and sums with an infinity are NaN by the rules of arithmetic; a pole on the circle is not.
+    total[is_infinite] = math.inf
+    return total
 
 
 def chain_response(chain: Chain, frequency_hz: ArrayLike) -> NDArray[np.complex128]:
@@ -124,7 +131,7 @@ def _roots_slope(roots: Roots, omega_rad: NDArray[np.float64]) -> NDArray[np.com
     total = np.zeros(omega_rad.shape, dtype=np.complex128)
     with np.errstate(divide="ignore", invalid="ignore"):
         for numerator, factor in zip(turned, factors(roots, omega_rad), strict=True):
-            total += np.where(factor == 0.0, np.nan, 1j * numerator / factor)
+            total += np.where(factor == 0.0, complex(np.nan, np.nan), 1j * numerator / factor)
     return total
 
 
