@@ -16,6 +16,8 @@ import termios
 import time
 from pathlib import Path
 
+from tests.benchmarks.row import Row
+
 RUNS = 7
 _SIZE = struct.pack("HHHH", 40, 120, 0, 0)
 _ROOT = Path(__file__).resolve().parents[2]
@@ -81,18 +83,16 @@ def _end(child: int, terminal: int) -> None:
     os.close(terminal)
 
 
-def run() -> None:
-    """Measure and print."""
+def rows() -> list[Row]:
+    """Measure both pairs."""
     pairs = [(seconds_to_end(["-c", "pass"]), seconds_to_end(["-m", "tonebench", "--help"])) for _ in range(RUNS)]
-    _tell("tonebench --help against python -c pass", pairs, 4.0)
     paints = [(seconds_to_paint(_BARE, b"first paint"), seconds_to_paint(_BENCH, b"findings")) for _ in range(RUNS)]
-    _tell("first paint against a bare Textual application", paints, 1.5)
+    return [
+        _row("tonebench --help", "python -c pass", pairs, 4.0),
+        _row("first paint of the screen", "a bare Textual application", paints, 1.5),
+    ]
 
 
-def _tell(what: str, pairs: list[tuple[float, float]], limit: float) -> None:
+def _row(what: str, yardstick: str, pairs: list[tuple[float, float]], goal: float) -> Row:
     bare, ours = (statistics.median(one) for one in zip(*pairs, strict=True))
-    print(f"{what}: {ours / bare:.2f} times ({ours:.3f} s, {bare:.3f} s); at most {limit:g}")
-
-
-if __name__ == "__main__":
-    run()
+    return Row(what, f"{ours:.3f} s", f"{yardstick}, {bare:.3f} s", ours / bare, goal)

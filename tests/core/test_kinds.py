@@ -158,7 +158,7 @@ def test_shelf_slope_of_one_is_q_of_root_half(kind: Kind, gain_db: float) -> Non
 
 @given(st.floats(5.0, 22000.0), st.floats(-1.0, 2.5), st.sampled_from((Kind.NOTCH, Kind.BAND_PASS, Kind.PEAK)))
 def test_widths_are_exact_in_the_digital_section(frequency_hz: float, exponent: float, kind: Kind) -> None:
-    """The band is 2·atan(alpha) wide, its edges at −3 dB (a peak: half the gain), their tangents' product tan²(w0/2)."""
+    """2·atan(alpha) wide, edges at −3 dB (a peak: half the gain), product of their tangents tan²(w0/2)."""
     q, gain_db = 10.0**exponent, 8.0 if kind is Kind.PEAK else 0.0
     omega = 2 * MP.pi * MP.mpf(frequency_hz) / 48000
     half_width = MP.atan(MP.sin(omega) / (2 * MP.mpf(q)))
