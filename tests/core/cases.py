@@ -3,6 +3,7 @@
 import math
 
 import numpy as np
+from hypothesis import settings
 from hypothesis import strategies as st
 from numpy.typing import NDArray
 
@@ -11,6 +12,9 @@ from tonebench.core.design import PoleZero
 from tonebench.core.kinds import Kind, has_gain
 from tonebench.core.roots import NO_ROOTS, ConjugatePair, RealRoots, Roots
 from tonebench.core.section import ByHand, ByKind, Section, by_kind
+
+# The same cases on every run and machine, and no time limit per case: mpmath is slow on a busy core.
+STEADY = settings(derandomize=True, deadline=None)
 
 RATES_HZ = (44100.0, 48000.0, 88200.0, 96000.0, 192000.0)
 

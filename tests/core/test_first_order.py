@@ -9,7 +9,7 @@ from hypothesis import strategies as st
 from scipy import signal
 
 from tests.core import oracles
-from tests.core.cases import PUBLISHED, chain_of, frequencies_hz, gains_db, rates_hz
+from tests.core.cases import PUBLISHED, STEADY, chain_of, frequencies_hz, gains_db, rates_hz
 from tests.core.oracles import MP
 from tonebench.core.coefficients import section_row
 from tonebench.core.design import realise
@@ -20,6 +20,7 @@ from tonebench.core.section import by_kind
 FIRST_ORDER = [kind for kind in Kind if has_first_order(kind)]
 
 
+@STEADY
 @given(st.data(), st.sampled_from(FIRST_ORDER), rates_hz, gains_db)
 def test_coefficients_are_the_prototypes(data: st.DataObject, kind: Kind, rate_hz: float, gain_db: float) -> None:
     """B and a of every kind; near half the rate tan multiplies a rounding by 34 (see test_kinds): 5e-14."""
@@ -32,6 +33,7 @@ def test_coefficients_are_the_prototypes(data: st.DataObject, kind: Kind, rate_h
         assert float(max(abs(MP.mpf(x) - y) for x, y in zip(found, wanted, strict=True)) / scale) < 5e-14
 
 
+@STEADY
 @given(st.sampled_from(FIRST_ORDER), st.floats(5.0, 22000.0), gains_db)
 def test_gains_at_the_ends_and_at_f0(kind: Kind, frequency_hz: float, gain_db: float) -> None:
     """Level at 0 Hz, f0 and half the rate: −3.01 dB or half the shelf's gain at f0; 1e-10 is rounding."""
@@ -48,6 +50,7 @@ def test_gains_at_the_ends_and_at_f0(kind: Kind, frequency_hz: float, gain_db: f
     assert np.abs(response) == pytest.approx(wanted, rel=1e-10, abs=1e-10)
 
 
+@STEADY
 @given(st.floats(5.0, 22000.0))
 def test_all_pass_turns_a_quarter_at_f0(frequency_hz: float) -> None:
     """(1 − s)/(1 + s) at s = j is −j, whatever f0; 1e-10 is rounding."""

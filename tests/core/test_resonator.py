@@ -7,7 +7,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from tests.core.cases import chain_of, frequencies_hz, kind_of
+from tests.core.cases import STEADY, chain_of, frequencies_hz, kind_of
 from tonebench.core.chain import Chain
 from tonebench.core.coefficients import section_row
 from tonebench.core.design import realise
@@ -44,6 +44,7 @@ def test_ring_at_the_ends() -> None:
     assert ring_from_radius(1.0, RATE_HZ) == math.inf
 
 
+@STEADY
 @given(frequencies_hz(RATE_HZ), st.floats(-4.0, 1.3).map(lambda e: 10.0**e), st.floats(-60.0, 60.0))
 def test_peak_is_exactly_the_gain_at_exactly_f0(frequency_hz: float, width_hz: float, gain_db: float) -> None:
     """|H(f0)| = gain and phase 0 there; level −3.01 dB at both edges of ``bandwidth_hz``."""
@@ -58,6 +59,7 @@ def test_peak_is_exactly_the_gain_at_exactly_f0(frequency_hz: float, width_hz: f
     assert around.max() < g
 
 
+@STEADY
 @given(st.floats(0.3, 0.999999), st.floats(0.01, 3.1))
 def test_pole_and_peak_are_related_as_published(radius: float, theta: float) -> None:
     """Peak at cos w = 2r cos(theta)/(1 + r²), width 2·atan((1 − r²)/(1 + r²)) (facts.md 6)."""
@@ -75,6 +77,7 @@ def test_pole_and_peak_are_related_as_published(radius: float, theta: float) -> 
     assert all_widths(made, RATE_HZ)[WidthKey.BANDWIDTH_HZ] == pytest.approx(width_hz, rel=1e-9)  # 1 − r² cancels
 
 
+@STEADY
 @given(st.sampled_from(tuple(WidthKey)), st.floats(50.0, 20000.0))
 def test_pole_frequency_holds_for_every_width(key: WidthKey, pole_hz: float) -> None:
     """``is_pole_frequency`` puts the pole's angle there, and the written width is what the read-out gives back."""

@@ -6,7 +6,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from tests.core.cases import chain_of, kind_of, kinds_at_rate
+from tests.core.cases import STEADY, chain_of, kind_of, kinds_at_rate
 from tests.core.oracles import MP
 from tonebench.core.coefficients import section_row
 from tonebench.core.design import realise
@@ -17,6 +17,7 @@ from tonebench.core.widths import all_widths, prototype
 from tonebench.errors import InvalidValueError
 
 
+@STEADY
 @given(kinds_at_rate(smallest_q=0.1))
 def test_round_trip_through_every_width(case: tuple[Section, float]) -> None:
     """Each width of the read-out, written back, makes the same section, the same read-out, and keeps its own key.
@@ -49,6 +50,7 @@ def _nearly_critical(section: Section, rate_hz: float) -> bool:
     return abs(prototype(made, rate_hz).q * a - 0.5) < 1e-6
 
 
+@STEADY
 @given(kinds_at_rate(smallest_q=1.0))
 def test_widths_by_their_definitions(case: tuple[Section, float]) -> None:
     """Octaves by the Cookbook's formula, Hz by 2·atan(alpha), radius by r² = (1 − alpha)/(1 + alpha), T60 = ln 1000.
@@ -86,6 +88,7 @@ def test_octaves_asked_and_given() -> None:
         assert math.log2((middle + half) / (middle - half)) == pytest.approx(printed, abs=6e-6)  # five places
 
 
+@STEADY
 @given(kinds_at_rate(smallest_q=2.0), st.floats(0.5, 1.5), st.floats(-6.0, 6.0))
 def test_the_written_width_is_kept(case: tuple[Section, float], ratio: float, gain_db: float) -> None:
     """Another frequency, gain or rate leaves key and value of the written width to the last bit, and it is obeyed."""

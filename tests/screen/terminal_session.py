@@ -42,6 +42,11 @@ class TerminalSession:
         """Return what is on the screen."""
         return self.tmux("capture-pane", "-p", "-t", "bench")
 
+    def close(self) -> None:
+        """Close the terminal with whatever runs in it, as a person closes a window; may be called twice."""
+        with contextlib.suppress(subprocess.CalledProcessError):
+            self.tmux("kill-server")
+
     def wait_for(self, *words: str) -> str:
         """Wait until all words are on the screen, and return it."""
         deadline = time.monotonic() + _DEADLINE_S
@@ -74,4 +79,4 @@ def terminal(folder: Path, arguments: str, size: tuple[int, int] = (120, 40)) ->
     try:
         yield session
     finally:
-        session.tmux("kill-server")
+        session.close()

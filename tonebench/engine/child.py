@@ -149,7 +149,7 @@ class _Engine:
     def _open(self) -> None:
         if self._callback is None:
             return
-        self._callback.player.guard.close()
+        self._callback.player.guard.shut()
         options = self._options
         opened = open_output(Wanted(options.device, self._rate_hz, options.block_frames, self._callback, self._shared))
         if isinstance(opened, str):

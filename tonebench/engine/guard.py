@@ -80,6 +80,11 @@ class Guard:
         """Fade out over the look-ahead from the next block, and stay silent."""
         self._is_open = False
 
+    def shut(self) -> None:
+        """Be silent at once: after a fault of the device the next sound fades in from nothing."""
+        self._is_open = False
+        self._fade = 0
+
     def rearm(self) -> None:
         """Take the guard out of its tripped state; sound fades in if it is open."""
         self.is_tripped = False

@@ -3,6 +3,9 @@
 Importing this loads Textual and nothing heavy, so that panels and frames are painted before numpy is read.
 """
 
+import asyncio
+import contextlib
+import signal
 from typing import TYPE_CHECKING, ClassVar
 
 from textual.app import ComposeResult
@@ -43,9 +46,21 @@ class BenchApp(PeakActions):
 
     def on_mount(self) -> None:
         """Paint the shell, then load."""
+        self._leave_when_told()
         self.set_marks(choose_marks())
         self.arrange(self.size)
         self.call_after_refresh(self._start_loading)
+
+    def _leave_when_told(self) -> None:
+        """Leave in order when the terminal's window is closed, or the system ends the program.
+
+        Without this Python would end on the spot, and the engine's shared memory would stay behind.
+        """
+        loop = asyncio.get_running_loop()
+        for name in ("SIGHUP", "SIGTERM"):
+            # Windows knows neither, and signals reach the main thread only.
+            with contextlib.suppress(NotImplementedError, RuntimeError, ValueError, AttributeError):
+                loop.add_signal_handler(getattr(signal, name), self.exit)
 
     def _start_loading(self) -> None:
         self.run_worker(self._load, thread=True, group="loading")
