@@ -43,7 +43,9 @@ def test_norms_against_brute_force(chain: Chain) -> None:
     largest = float(np.max(np.abs(np.fft.rfft(h))))
     if largest < 1e-8:
         return
-    assert gain_db >= 20.0 * math.log10(largest) - 1e-6
+    has_comb = chain.combine == "sum" and any(one.delay_samples for one in chain.sections)
+    # Delays in a sum make a comb, whose highest tooth the grid may miss: see the xfail below.
+    assert gain_db >= 20.0 * math.log10(largest) - (0.01 if has_comb else 1e-6)
     assert gain_db == pytest.approx(20.0 * math.log10(largest), abs=0.01)
     assert peak_db == pytest.approx(20.0 * math.log10(float(np.sum(np.abs(h)))), abs=0.01)
     assert peak_db >= gain_db - 0.01  # ‖H‖∞ ≤ ‖h‖₁
@@ -76,6 +78,16 @@ def test_worst_peak_of_many_equal_poles(count: int) -> None:
     chain = chain_of(*(by_kind(Kind.RESONATOR, 1000.0, ("ring_s", 0.05)) for _ in range(count)))
     wanted = 20.0 * math.log10(float(np.sum(np.abs(click(chain, 60_000)))))
     assert worst_peak_db(chain) == pytest.approx(wanted, abs=0.05)
+
+
+@pytest.mark.xfail(reason="the grid knows the roots but not the teeth that delays make in a sum")
+def test_largest_gain_of_a_sum_with_a_delay() -> None:
+    """A peak and a bell 5000 samples late: a long transform finds 0.115 dB more, over the 0.1 dB of a difference."""
+    frequency_hz, q, gain_db = 341.6612828119265, 2.5522903272632504, 11.771956235742557
+    late = replace(by_kind(Kind.RESONATOR, 1.3 * frequency_hz, ("q", q), gain_db), delay_samples=5000)
+    chain = chain_of(by_kind(Kind.PEAK, frequency_hz, ("q", q), gain_db), late, combine="sum")
+    largest = float(np.max(np.abs(np.fft.rfft(click(chain, 2**18), 2**20))))
+    assert largest_gain(chain)[0] == pytest.approx(20.0 * math.log10(largest), abs=0.01)
 
 
 @STEADY

@@ -4,9 +4,9 @@ from dataclasses import dataclass, field, replace
 
 import numpy as np
 from numpy.typing import NDArray
-from tonebench.engine.client import EngineStatus
 
 from tonebench.core.coefficients import Coefficients
+from tonebench.engine.client import EngineStatus
 
 STOPPED = EngineStatus(
     phase="stopped",
