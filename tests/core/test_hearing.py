@@ -99,6 +99,17 @@ def test_largest_gain_of_one_peak_is_its_own(frequency_hz: float, exponent: floa
     assert found_hz == pytest.approx(frequency_hz, rel=1e-2 / 10.0**exponent)
 
 
+@STEADY
+@given(st.floats(1000.0, 20000.0), st.floats(3.0, 5.0))
+def test_a_narrow_peak_is_not_lost_beside_a_wide_one(frequency_hz: float, exponent: float) -> None:
+    """+12 dB of Q 1000 and more, thinner than the grid's 1 %, over a broad +9 dB at 100 Hz, which adds under 1 dB."""
+    broad = by_kind(Kind.PEAK, 100.0, ("q", 1.0), 9.0)
+    narrow = by_kind(Kind.PEAK, frequency_hz, ("q", 10.0**exponent), 12.0)
+    found_db, found_hz = largest_gain(chain_of(broad, narrow))
+    assert 12.0 <= found_db < 13.0
+    assert found_hz == pytest.approx(frequency_hz, rel=0.1 / 10.0**exponent)  # a tenth of its bandwidth
+
+
 def test_largest_gain_at_the_ends_and_flat() -> None:
     """A shelf's end, a wire, and silence."""
     low, high = (largest_gain(chain_of(by_kind(kind, 100.0, None, 6.0))) for kind in (Kind.LOW_SHELF, Kind.HIGH_SHELF))

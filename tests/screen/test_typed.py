@@ -6,6 +6,7 @@ from pathlib import Path
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
+from textual import events
 
 from tests.screen.opening import make_bench, opened
 from tonebench.errors import TypedLineError
@@ -172,5 +173,21 @@ def test_a_folder_that_cannot_be_written_is_one_sentence(tmp_path: Path) -> None
             await one.press("x", "S")
             assert "could not be written" in one.message or "does not exist" in one.message
             assert one.session.is_dirty
+
+    asyncio.run(run())
+
+
+def test_keys_typed_at_once_behind_enter_are_text() -> None:
+    """A fast hand, or a paste: nothing behind Enter acts as a command, however little time the screen has had."""
+
+    async def run() -> None:
+        async with opened() as one:
+            line = "peak 320 Hz -4 dB q 1.2"
+            named = {" ": "space", "-": "minus", ".": "full_stop"}
+            one.app.post_message(events.Key("enter", None))
+            for character in line:
+                one.app.post_message(events.Key(named.get(character, character), character))
+            await one.settled()
+            assert one.app.typed_input.value == line
 
     asyncio.run(run())

@@ -13,7 +13,7 @@ from textual.binding import BindingType
 
 from tonebench.screen import shell
 from tonebench.screen.actions_peak import PeakActions
-from tonebench.screen.keys import bindings
+from tonebench.screen.keys import OPENING, bindings
 from tonebench.screen.terminal import choose_marks
 
 if TYPE_CHECKING:
@@ -39,6 +39,12 @@ class BenchApp(PeakActions):
     def __init__(self, loader: "Loader") -> None:
         super().__init__()
         self._loader = loader
+
+    def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
+        """Leave keys that open the typed line to the line itself, and to help and findings, while open."""
+        if action in OPENING and (len(self.screen_stack) > 1 or self.is_typing):
+            return False
+        return super().check_action(action, parameters)
 
     def compose(self) -> ComposeResult:
         """Lay out the shell."""

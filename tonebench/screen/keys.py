@@ -62,7 +62,9 @@ CHAIN: Final = (
     Key("tab", "Tab", "section(1)", "next section", "section", is_priority=True),
     Key("shift+tab", "Shift+Tab", "section(-1)", "section before", is_priority=True),
     *(Key(str(n), str(n), f"number({n})", f"section {n}") for n in range(1, 10)),
-    Key("a", "a", "add", "add a section after this one: type it, or Enter for the one offered", "add"),
+    Key(
+        "a", "a", "add", "add a section after this one: type it, or Enter for the one offered", "add", is_priority=True
+    ),
     Key("x", "x", "remove", "remove this section", "remove"),
     Key("b", "b", "bypass", "bypass this section, or take it back in", "bypass"),
     Key("less_than_sign", "<", "reorder(-1)", "section one place earlier"),
@@ -77,13 +79,17 @@ LOOK: Final = (
     Key("escape", "Esc", "cancel", "leave the typed line, or close help and findings"),
 )
 KEEP: Final = (
-    Key("enter", "Enter", "type", "open the typed line", "type"),
-    Key("S,ctrl+s", "S", "save", "save; a new or bundled preset asks for a file name", "save"),
-    Key("e", "e", "export", "export for the build", "export"),
+    Key("enter", "Enter", "type", "open the typed line", "type", is_priority=True),
+    Key("S,ctrl+s", "S", "save", "save; a new or bundled preset asks for a file name", "save", is_priority=True),
+    Key("e", "e", "export", "export for the build", "export", is_priority=True),
     Key("q,ctrl+q,ctrl+c", "q", "quit", "quit; with unsaved work, press it twice", "quit"),
 )
 GROUPS: Final = (("Hear", HEAR), ("Shape", SHAPE), ("Chain", CHAIN), ("Look", LOOK), ("Keep", KEEP))
 KEYS: Final = tuple(key for _, keys in GROUPS for key in keys)
+
+# These open the typed line. They act before the next key is looked at (priority), so that what is typed fast behind
+# them is text and not commands; the application hands them on while something else has the keys.
+OPENING: Final = frozenset({"add", "type", "save", "export"})
 
 # Pairs that the row of hints writes together, and the order there: what is needed most comes first, since a narrow
 # terminal cuts the row at its end. Help and quit are always there.

@@ -123,7 +123,8 @@ class TypedInput(Input):
         self.can_focus = True
         self.value = text
         self.cursor_position = len(text)
-        self.focus()
+        # Now, not in a later turn as focus() does: keys typed fast behind Enter must not act as commands.
+        self.screen.set_focus(self)
         if is_selected:
             self.select_all()
 
