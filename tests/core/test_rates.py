@@ -148,7 +148,6 @@ def test_delay_keeps_its_seconds() -> None:
     assert change.lost == ()
 
 
-@pytest.mark.xfail(reason="at_rate raises instead of naming the section as lost")
 @pytest.mark.parametrize(
     "section",
     [

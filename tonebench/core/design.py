@@ -13,7 +13,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from tonebench.core.kinds import Kind, WidthKey
-from tonebench.core.roots import NO_ROOTS, ConjugatePair, RealRoots, Roots, factors
+from tonebench.core.roots import NO_ROOTS, ConjugatePair, RealRoots, Roots, factors, largest_radius
 from tonebench.core.section import ByHand, ByKind, Section
 from tonebench.core.widths import (
     Prototype,
@@ -91,6 +91,8 @@ def _second_order(made: ByKind, proto: Prototype) -> PoleZero:
     poles = bilinear_roots(pole_k, proto.q * pole_q_ratio(kind, amplitude))
     if isinstance(poles, ConjugatePair) and made.width is not None and made.width.key is WidthKey.RADIUS:
         poles = replace(poles, radius=made.width.value)  # what was written, to the last bit
+    if largest_radius([poles]) >= 1.0:
+        raise InvalidValueError(f"this {kind} is so narrow that its poles land on the unit circle; make it wider")
     alpha = k / (1.0 + k * k) / proto.q
     if kind is Kind.ALL_PASS:
         return _mirrored(poles)
@@ -168,9 +170,11 @@ def _by_hand(made: ByHand, sample_rate_hz: float) -> PoleZero:
         rule = f"at most half the sampling rate ({0.5 * sample_rate_hz:g} Hz)"
         raise InvalidValueError(must_be("gain_at_hz", rule, made.gain_at_hz))
     omega = np.array([2.0 * math.pi * made.gain_at_hz / sample_rate_hz])
-    numerator = math.prod(abs(one[0]) for one in factors(made.zeros, omega))
-    denominator = math.prod(abs(one[0]) for one in factors(made.poles, omega))
-    if min(numerator, denominator) < 1e-12:
+    from_zeros = [abs(one[0]) for one in factors(made.zeros, omega)]
+    from_poles = [abs(one[0]) for one in factors(made.poles, omega)]
+    numerator, denominator = math.prod(from_zeros), math.prod(from_poles)
+    # A root at the very frequency comes out as the rounding of its sine, some 1e-16.
+    if min((*from_zeros, *from_poles), default=1.0) < 1e-15 or not math.isfinite(gain * denominator / numerator):
         raise InvalidValueError(
             must_be("gain_at_hz", "a frequency without a zero or a pole on the unit circle", made.gain_at_hz)
         )

@@ -36,12 +36,13 @@ def at_rate(chain: Chain, sample_rate_hz: float) -> RateChange:
     """Return the chain for another sample rate, with what was lost on the way."""
     if sample_rate_hz == chain.sample_rate_hz:
         return RateChange(chain, ())
+    replace(chain, sections=(), sample_rate_hz=sample_rate_hz)  # refuses an impossible rate
     ratio = chain.sample_rate_hz / sample_rate_hz
     sections: list[Section] = []
     lost: list[tuple[int, str]] = []
     for number, section in enumerate(chain.sections, start=1):
-        moved, losses = _section_at(section, sample_rate_hz, ratio)
         try:
+            moved, losses = _section_at(section, sample_rate_hz, ratio)
             Chain(chain.name, sample_rate_hz, (moved,))
         except InvalidValueError as error:
             reason = str(error).removeprefix("section 1: ")

@@ -11,7 +11,7 @@ H(z)·z^(n−1) around them (Cauchy's residue theorem), which does not.
 import cmath
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -25,7 +25,7 @@ from tonebench.core.widths import ring_from_radius
 
 AUDIBLE_LEVEL_DB = -60.0  # a ring that starts lower than this under its reference is not judged
 _CONTOUR_POINTS = 64
-_CLUSTER_TIME_CONSTANTS = 20.0  # a double pole of +20 dB is 60 dB down after 13
+_LARGEST_CLICK_FRAMES = 1 << 20
 _CLUSTER_POINTS = 400
 _CLICK_FRAMES = 4096
 
@@ -71,18 +71,48 @@ class _Pole:
 def rings(chain: Chain) -> tuple[Ring, ...]:
     """Return every mode of the chain, the longest ring first."""
     realised = chain.realised()
-    poles = [
-        _Pole(cmath.rect(point.radius, point.angle_rad), point, one.identity)
-        for one in realised
-        for point in polar_points(one.poles)
-        if point.radius > 0.0
-    ]
+    poles = [pole for one in realised for pole in _poles(one)]
     if not poles:
         return ()
-    click = impulse_response(from_chain(chain), _CLICK_FRAMES)
+    with np.errstate(all="ignore"):
+        click = impulse_response(from_chain(chain), _click_frames(chain, realised, poles))
     reference = float(np.max(np.abs(click[np.isfinite(click)]), initial=0.0))
     modes = [_mode(chain, realised, cluster, poles, reference) for cluster in _clusters(poles)]
     return tuple(sorted(modes, key=lambda one: one.t60_s, reverse=True))
+
+
+def _poles(realised: PoleZero) -> list[_Pole]:
+    """Return the poles of the upper half plane and the real axis.
+
+    A pair that has died before it has turned (angle under half of |ln r|: a Q near one half) is given whole: its
+    members' partial fractions cancel as those of near-double poles do.
+    """
+    found = []
+    for point in polar_points(realised.poles):
+        if point.radius == 0.0:
+            continue
+        value = cmath.rect(point.radius, point.angle_rad)
+        if not point.is_pair or point.angle_rad in (0.0, math.pi):
+            value = complex(math.copysign(point.radius, value.real))  # exactly real: a rounded sine of pi is not 0
+        pole = _Pole(value, point, realised.identity)
+        found.append(pole)
+        is_slow_to_turn = min(point.angle_rad, math.pi - point.angle_rad) < 0.5 * abs(math.log(point.radius))
+        if point.is_pair and is_slow_to_turn:
+            found.append(replace(pole, value=value.conjugate()))
+    return found
+
+
+def _click_frames(chain: Chain, realised: Sequence[PoleZero], poles: Sequence[_Pole]) -> int:
+    """Return how much of the impulse response surely holds its largest sample.
+
+    k equal poles in series rise for up to k time constants before they fall.
+    """
+    radii = [one.point.radius for one in poles if one.point.radius < 1.0]
+    slowest = min((-math.log(radius) for radius in radii), default=1.0)
+    count = sum(1 for radius in radii if -math.log(radius) < 2.0 * slowest) if chain.combine == "series" else 1
+    delays = [one.delay_samples for one in realised]
+    late = max(delays, default=0) if chain.combine == "sum" else sum(delays)
+    return min(_CLICK_FRAMES + late + int((count - 1) / slowest), _LARGEST_CLICK_FRAMES)
 
 
 def longest_ring_s(chain: Chain) -> float:
@@ -167,12 +197,14 @@ def _tails(
     |R·(r/(1 − r) + p·e^{jw}/(1 − p·e^{jw}))|: the tone's two halves e^{±jw} each leave R·p/(e^{±jw} − p).
     """
     outermost = max(cluster, key=lambda one: one.point.radius)
-    is_conjugate = outermost.point.is_pair and 0.0 < outermost.point.angle_rad < math.pi
+    is_conjugate = outermost.value.imag > 0.0 and not any(one.value.imag < 0.0 for one in cluster)
     z, weight = _contours(chain, realised, cluster, poles)
     frames = _frames(cluster)
     powers = z[None, :] ** frames[:, None]
     click = np.abs(powers @ (weight / z)) * (2.0 if is_conjugate else 1.0)
     tone = cmath.rect(1.0, outermost.point.angle_rad)
+    if not is_conjugate:
+        tone = complex(math.copysign(1.0, tone.real))  # a mode on the real axis is left behind by 0 Hz or fs/2
     halves = (tone, tone.conjugate()) if is_conjugate else (tone,)
     after_tone = np.abs(powers @ sum((weight / (half - z) for half in halves), np.zeros_like(z)))
     t60_s = ring_from_radius(outermost.point.radius, chain.sample_rate_hz)
@@ -186,7 +218,8 @@ def _frames(cluster: list[_Pole]) -> NDArray[np.float64]:
     if len(cluster) == 1:
         return np.zeros(1)
     slowest = min(abs(math.log(one.point.radius)) for one in cluster)
-    return np.linspace(0.0, _CLUSTER_TIME_CONSTANTS / slowest, _CLUSTER_POINTS)
+    # n equal poles are 60 dB down after some 5 + 1.9·n time constants (measured); a louder start adds to that.
+    return np.linspace(0.0, (16.0 + 2.0 * len(cluster)) / slowest, _CLUSTER_POINTS)
 
 
 def _contours(
@@ -199,7 +232,8 @@ def _contours(
     """
     slowest = min(abs(math.log(one.point.radius)) for one in cluster)
     turned = np.exp(2j * math.pi * (np.arange(_CONTOUR_POINTS) + 0.5) / _CONTOUR_POINTS)
-    everywhere = [one.value for one in poles] + [one.value.conjugate() for one in poles if one.value.imag != 0.0]
+    everywhere = [0j, *(one.value for one in poles)]  # in powers of 1/z there are poles at 0 as well
+    everywhere += [one.value.conjugate() for one in poles if one.value.imag != 0.0]
     points, weights = [], []
     for group in _grouped(cluster, 0.25 * slowest):
         centre = sum(group, 0j) / len(group)
@@ -232,7 +266,9 @@ def _transfer(
     gain = 10.0 ** (chain.gain_db / 20.0)
     identities = {one.identity for one in cluster}
     if chain.combine == "sum":
-        parts = [_section(one, z) for one in realised if one.identity in identities]
+        own = [one for one in realised if one.identity in identities]
+        latest = max(one.delay_samples for one in own)  # the tail is looked at from when all of its parts sound
+        parts = [_section(one, z) * z ** (latest - one.delay_samples) for one in own]
         total = np.zeros(z.shape, dtype=np.complex128)
         for part in parts:
             total += part
@@ -249,7 +285,7 @@ def _section(one: PoleZero, z: NDArray[np.complex128]) -> NDArray[np.complex128]
         result *= 1.0 - zero / z
     for pole in root_values(one.poles):
         result /= 1.0 - pole / z
-    return np.asarray(result)  # delay only shifts the envelope in time
+    return np.asarray(result)  # the delay of a series only shifts the envelope in time
 
 
 def _decibel(ratio: float) -> float:

@@ -141,7 +141,7 @@ class Section:
     def __post_init__(self) -> None:
         if self.polarity not in (1, -1):
             raise InvalidValueError(must_be("polarity", "1 or -1", self.polarity))
-        if not 0 <= self.delay_samples <= LARGEST_DELAY_SAMPLES:
+        if self.delay_samples != int(self.delay_samples) or not 0 <= self.delay_samples <= LARGEST_DELAY_SAMPLES:
             rule = f"whole samples from 0 to {LARGEST_DELAY_SAMPLES}"
             raise InvalidValueError(must_be("delay", rule, self.delay_samples))
 

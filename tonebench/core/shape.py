@@ -14,8 +14,9 @@ from tonebench.core.section import ByHand, ByKind, Section
 from tonebench.core.widths import all_widths, pole_q_ratio, pole_tangent_ratio, prototype
 from tonebench.errors import InvalidValueError
 
-# A kind stops this far from the rim: a ring of 48 minutes at 48 kHz.
-_SMALLEST_LOG_RADIUS = 5e-8
+# A held key stops this far from the rim, a ring of 12 minutes at 48 kHz, and outside RIM_LOG_RADIUS, so that a pole
+# that was stopped here can come back.
+_SMALLEST_LOG_RADIUS = 2e-7
 _LARGEST_OMEGA = 0.9999 * math.pi
 _SMALLEST_OMEGA = 1e-7
 
@@ -47,7 +48,7 @@ def move_pole(section: Section, sample_rate_hz: float, move: Move) -> Section:
     poles = realise(section, sample_rate_hz).poles
     if made.width is None or isinstance(poles, RealRoots):
         return _moved_by_numbers(section, made, sample_rate_hz, move)
-    moved = _moved_pair(poles, move)
+    moved = _moved_pair(poles, move, is_rim_fixed=False)
     return set_pole(section, sample_rate_hz, moved.radius, moved.angle_rad)
 
 
@@ -118,16 +119,20 @@ def _moved_roots(roots: Roots, move: Move) -> Roots:
     return RealRoots(tuple(math.copysign(_moved_radius(abs(v), move.ring_ratio), v) for v in roots.values))
 
 
-def _moved_pair(pair: ConjugatePair, move: Move) -> ConjugatePair:
+def _moved_pair(pair: ConjugatePair, move: Move, *, is_rim_fixed: bool = True) -> ConjugatePair:
     angle = min(max(pair.angle_rad * move.pitch_ratio, _SMALLEST_OMEGA), _LARGEST_OMEGA)
     if pair.angle_rad in (0.0, math.pi):
         angle = pair.angle_rad
-    return ConjugatePair(_moved_radius(pair.radius, move.ring_ratio), angle)
+    return ConjugatePair(_moved_radius(pair.radius, move.ring_ratio, is_rim_fixed=is_rim_fixed), angle)
 
 
-def _moved_radius(radius: float, ring_ratio: float) -> float:
-    """Scale ln r, so that ring time scales; a root never crosses the unit circle by a step."""
-    if radius == 0.0 or is_on_rim(radius):
+def _moved_radius(radius: float, ring_ratio: float, *, is_rim_fixed: bool = True) -> float:
+    """Scale ln r, so that ring time scales; a root never crosses the unit circle by a step.
+
+    A root by hand that lies on the circle stays there; the pole of a kind that is typed that close can still be moved.
+    """
+    if radius == 0.0 or ring_ratio == 1.0 or (is_rim_fixed and is_on_rim(radius)):
         return radius
-    log_radius = math.log(radius) / ring_ratio
-    return math.exp(math.copysign(max(abs(log_radius), _SMALLEST_LOG_RADIUS), log_radius))
+    before = math.log(radius)
+    smallest = min(_SMALLEST_LOG_RADIUS, abs(before)) if ring_ratio > 1.0 else 0.0
+    return math.exp(math.copysign(max(abs(before) / ring_ratio, smallest), before))
