@@ -152,6 +152,36 @@ def test_refusals(engine: EngineClient) -> None:
         EngineClient(device="silent", block_frames=1 << 20)
 
 
+def test_a_child_that_hangs_does_not_make_this_side_wait(engine: EngineClient) -> None:
+    """A stopped child: 200 edits of 128 sections return at once, and the last is heard when it goes on."""
+    sections = tuple(by_kind(Kind.PEAK, 100.0 + 50.0 * index, ("q", 3.0), 0.1) for index in range(128))
+    full = from_chain(Chain("x", RATE_HZ, sections))
+    engine.load_clip(_clip(), RATE_HZ)
+    engine.play()
+    _wait(engine, lambda status: status.phase == "playing")
+    number = engine._process.pid
+    assert number is not None
+    os.kill(number, signal.SIGSTOP)
+    start = time.monotonic()
+    for _ in range(200):
+        engine.set_coefficients(full)
+    assert time.monotonic() - start < 2.0  # a full pipe would wait for ever
+    os.kill(number, signal.SIGCONT)
+    _wait(engine, lambda _: not engine._is_chain_waiting)
+    assert engine.status().phase == "playing"
+
+
+def test_after_close_everything_answers_and_nothing_moves() -> None:
+    """A late timer of the screen finds the last status, and no samples."""
+    client = EngineClient(device="silent", capture_frames=100)
+    client.close()
+    assert client.status().phase == "starting"
+    assert client.recent(10)[0].shape == (0, 2)
+    assert client.drain_capture().shape == (0, 2)
+    with pytest.raises(EngineError, match="closed"):
+        client.stop()
+
+
 _PARENT = """
 import sys, time, numpy as np
 from tonebench.engine.client import EngineClient

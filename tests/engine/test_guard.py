@@ -147,3 +147,16 @@ def test_nothing_leaves_a_guard_that_was_not_opened() -> None:
     guard = Guard(RATE_HZ)
     assert guard.is_closed
     assert not guard.process_block(np.full((5000, 2), 0.25)).any()
+
+
+def test_shut_is_silent_at_once_and_fades_in_again() -> None:
+    """After a fault of the device the next sound rises from nothing, as at the start."""
+    guard = _opened()
+    guard.process_block(np.full((2000, 2), 0.25))
+    guard.shut()
+    guard.open()
+    out = guard.process_block(np.full((FADE_IN + 10, 2), 0.25))[:, 0]
+    assert out[0] < 1e-5
+    assert (np.diff(out) >= 0.0).all()
+    tenth = FADE_IN // 10
+    assert out[tenth] <= 0.25 * (0.5 - 0.5 * np.cos(np.pi * 0.102))

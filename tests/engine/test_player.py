@@ -151,3 +151,26 @@ def test_a_chain_that_runs_away_is_silenced_and_comes_back_armed() -> None:
     out = _play(player, 9600)
     assert not player.guard.reason
     assert out[-1000:].any()
+
+
+def test_a_loop_moved_away_is_a_fade() -> None:
+    """Where the clip was goes on under what comes: no step larger than the tone's own and the fade's together."""
+    time_s = np.arange(96_000) / RATE_HZ
+    tone = (0.2 * np.sin(2.0 * np.pi * 100.0 * time_s))[:, None].astype(np.float32)
+    player = _player(tone, Chain("x", RATE_HZ))
+    _play(player, 48_000)
+    player.loop = Loop(120, 24_120)  # a quarter of a period away
+    out = _play(player, 4800)[:, 0].astype(np.float64)
+    own = 0.2 * 2.0 * np.pi * 100.0 / RATE_HZ
+    fade = 0.4 * np.pi / 2.0 / (CROSS_FADE_S * RATE_HZ)  # a raised cosine between values at most 0.4 apart
+    assert np.abs(np.diff(out)).max() <= own + fade
+
+
+def test_rearm_of_an_idle_guard_changes_nothing() -> None:
+    """The chain's state goes on: the samples are those of a player that was left alone."""
+    clip = _noise(48_000)
+    armed, alone = _player(clip), _player(clip)
+    for player in (armed, alone):
+        _play(player, 4096)
+    armed.rearm()
+    assert np.array_equal(_play(armed, 4096), _play(alone, 4096))

@@ -3,6 +3,7 @@
 import argparse
 import contextlib
 import math
+import signal
 import time
 from collections.abc import Iterator
 from dataclasses import dataclass
@@ -46,6 +47,7 @@ def play(arguments: argparse.Namespace) -> int:
     chain = _chain_at_clip(loaded.preset.chain, clip)
     with _capture(arguments.capture, clip) as writer:
         ring_frames = int(_CAPTURE_RING_S * clip.sample_rate_hz) if writer else 0
+        _leave_when_told()
         engine = EngineClient(device=wish.device, capture_frames=ring_frames)
         try:
             engine.load_clip(clip.frames, clip.sample_rate_hz)
@@ -58,6 +60,17 @@ def play(arguments: argparse.Namespace) -> int:
         finally:
             engine.close()
     return 0
+
+
+def _leave_when_told() -> None:
+    """Treat the end of the terminal, and a polite kill, as Ctrl-C: sound fades out and nothing is left behind."""
+
+    def interrupt(_number: int, _frame: object) -> None:
+        raise KeyboardInterrupt
+
+    for name in ("SIGTERM", "SIGHUP"):  # Windows has no SIGHUP
+        if hasattr(signal, name):
+            signal.signal(getattr(signal, name), interrupt)
 
 
 def _checked(arguments: argparse.Namespace) -> _Wish:

@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 
 from tonebench.engine.player import Loop, Player, peak_db
 from tonebench.engine.shared import (
+    GUARD_REASONS,
     HEARABLE,
     LOADS,
     PHASES,
@@ -38,6 +39,7 @@ class Callback:
         self.player = player
         self._shared = shared
         self._rate_hz = sample_rate_hz
+        self.is_held = False  # the other thread wants silence, before it takes clip or device away
         self._rearmed = shared.commands[Command.REARM_COUNT]
         self._ceiling_db = float(shared.commands[Command.CEILING_DB])
         player.guard.set_ceiling_db(self._ceiling_db)
@@ -57,7 +59,7 @@ class Callback:
 
     def _obey(self) -> None:
         commands, player = self._shared.commands, self.player
-        player.is_wanted = bool(commands[Command.IS_PLAYING])
+        player.is_wanted = bool(commands[Command.IS_PLAYING]) and not self.is_held
         player.is_muted = bool(commands[Command.IS_MUTED])
         player.set_level_db(float(commands[Command.LEVEL_DB]))
         player.hear(HEARABLE[int(commands[Command.HEAR])])
@@ -82,6 +84,7 @@ class Callback:
         shared, player, meters = self._shared, self.player, self._shared.meters
         guard = player.guard
         meters[Meter.GUARD] = 2 if guard.is_tripped else 1 if guard.is_limiting else 0
+        meters[Meter.GUARD_REASON] = GUARD_REASONS.index(guard.reason)
         meters[Meter.POSITION] = player.position
         meters[Meter.LOOP_START], meters[Meter.LOOP_END] = player.loop.start, player.loop.end
         is_idle = player.is_idle

@@ -10,20 +10,24 @@ import os
 import sys
 import time
 from multiprocessing.connection import Connection
+from typing import TYPE_CHECKING
 
 import numpy as np
 
-from tonebench.core.coefficients import Coefficients
 from tonebench.engine.callback import Callback
 from tonebench.engine.kernel import Kernel
-from tonebench.engine.messages import ClipMessage, Options
+from tonebench.engine.messages import ChainMessage, ClipMessage, Options
 from tonebench.engine.output import Output, Wanted, open_output, silence_descriptor_two
 from tonebench.engine.player import Player
 from tonebench.engine.shared import PHASES, Command, Meter, SharedBlock, SharedClip
 
+if TYPE_CHECKING:
+    from tonebench.core.coefficients import Coefficients
+
 _TICK_S = 0.02
 _STALE_S = 0.5  # a device whose callback has not come for this long is gone, whatever it says of itself
 _RETRY_S = 1.0
+_FADE_OUT_S = 0.2
 _LINGER_S = 2.0  # a stopped device is kept this long, so that play after stop starts at once
 
 
@@ -75,7 +79,8 @@ class _Engine:
             self._watch_output()
 
     def close(self) -> None:
-        """Close device, clip and shared memory."""
+        """Fade out, and close device, clip and shared memory."""
+        self._fade_out()
         if self._output is not None:
             self._output.close()
         self._callback = None
@@ -89,8 +94,9 @@ class _Engine:
         chain: Coefficients | None = None
         while self._connection.poll(0):
             message = self._connection.recv()
-            if isinstance(message, Coefficients):
-                chain = message
+            if isinstance(message, ChainMessage):
+                chain = message.coefficients
+                self._shared.meters[Meter.CHAIN_NUMBER] = message.number
             elif isinstance(message, ClipMessage):
                 clip, chain = message, None
             else:
@@ -104,6 +110,7 @@ class _Engine:
             player.pending_kernel = Kernel(chain, player.channels)
 
     def _load(self, message: ClipMessage) -> None:
+        self._fade_out()
         self._close_output()
         old = self._clip
         self._clip = SharedClip(message.shape, message.name)
@@ -135,10 +142,12 @@ class _Engine:
 
     def _is_gone(self, now: float) -> bool:
         output = self._output
-        if output is None or not output.is_device:
+        if output is None:
             return False
+        if not output.is_active or not output.is_device:
+            return not output.is_active
         last = max(float(self._shared.meters[Meter.CALLBACK_S]), output.opened_s)
-        return not output.is_active or now - last > _STALE_S
+        return now - last > _STALE_S
 
     def _lose(self, now: float) -> None:
         self._close_output()
@@ -163,6 +172,19 @@ class _Engine:
         look_ahead = self._callback.player.guard.look_ahead_frames / self._rate_hz
         self._shared.meters[Meter.LATENCY_MS] = 1000.0 * (look_ahead + opened.latency_s)
         self._say(opened.name, opened.message)
+
+    def _fade_out(self) -> None:
+        """Wait until nothing sounds, the device's own buffer included; a device that hangs is not waited for."""
+        if self._output is None or self._callback is None:
+            return
+        player = self._callback.player
+        self._callback.is_held = True
+        deadline = time.monotonic() + _FADE_OUT_S
+        while time.monotonic() < deadline:
+            if player.is_idle:
+                break
+            time.sleep(0.002)
+        time.sleep(min(self._output.latency_s, _FADE_OUT_S))
 
     def _close_output(self) -> None:
         if self._output is not None:

@@ -7,7 +7,10 @@ is started with the same clip, chain and settings.
 import contextlib
 import math
 import multiprocessing
+import signal
+import threading
 import time
+from collections.abc import Iterator
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -15,8 +18,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from tonebench.core.coefficients import Coefficients
-from tonebench.engine.messages import ClipMessage, Options
+from tonebench.engine.messages import ChainMessage, ClipMessage, Options
 from tonebench.engine.shared import (
+    GUARD_REASONS,
     GUARD_STATES,
     HEARABLE,
     PHASES,
@@ -109,12 +113,16 @@ class EngineClient:
         if not SMALLEST_BLOCK_FRAMES <= block_frames <= LARGEST_BLOCK_FRAMES:
             rule = f"between {SMALLEST_BLOCK_FRAMES} and {LARGEST_BLOCK_FRAMES}"
             raise InvalidValueError(must_be("block_frames", rule, block_frames))
-        self._shared = SharedBlock(capture_frames)
+        with _shielded():  # the first shared memory starts Python's resource tracker, a process that must outlive us
+            self._shared = SharedBlock(capture_frames)
         self._options = Options(self._shared.name, capture_frames, device, block_frames)
         self._clip: SharedClip | None = None
         self._clip_number = 0
         self._rate_hz = 0.0
         self._coefficients: Coefficients | None = None
+        self._chain_number = 0
+        self._is_chain_waiting = False
+        self._last: EngineStatus | None = None
         self._device_name, self._message = "", ""
         self._captured = 0
         self._lost = 0
@@ -132,7 +140,9 @@ class EngineClient:
         )
         self._shared.meters[Meter.ALIVE_S] = math.nan
         self._shared.meters[Meter.PHASE] = PHASES.index("starting")
-        self._process.start()
+        self._shared.meters[Meter.CHAIN_NUMBER] = self._chain_number
+        with _shielded():
+            self._process.start()
         theirs.close()
         self._started_s = time.monotonic()
         self._send_clip()
@@ -171,8 +181,19 @@ class EngineClient:
     def set_coefficients(self, coefficients: Coefficients) -> None:
         """Change the chain; heard in the next block, faded, states carried by identity."""
         self._coefficients = coefficients
-        if self._clip is not None:
-            self._send(coefficients)
+        self._is_chain_waiting = self._clip is not None
+        self._send_chain()
+
+    def _send_chain(self) -> None:
+        """Send the latest chain if the child has taken the one before: a child that hangs cannot make this side wait.
+
+        What has to wait goes with the next call of ``status``, ``recent`` or ``drain_capture``.
+        """
+        is_taken = int(self._shared.meters[Meter.CHAIN_NUMBER]) == self._chain_number
+        if self._is_chain_waiting and is_taken and self._coefficients is not None:
+            self._is_chain_waiting = False
+            self._chain_number += 1
+            self._send(ChainMessage(self._chain_number, self._coefficients))
 
     def play(self) -> None:
         """Start, fading in.
@@ -237,9 +258,18 @@ class EngineClient:
         self._shared.commands[command] = value
 
     def status(self) -> EngineStatus:
-        """Return what the engine is doing, and start a new child if the old one is dead or hangs."""
+        """Return what the engine is doing, and start a new child if the old one is dead or hangs.
+
+        After ``close`` it is what it was last.
+        """
+        if not self._is_closed or self._last is None:
+            self._last = self._read_status()
+        return self._last
+
+    def _read_status(self) -> EngineStatus:
         self._listen()
         self._revive()
+        self._send_chain()
         meters, commands = self._shared.meters.copy(), self._shared.commands.copy()
         loads = self._shared.loads
         guard = GUARD_STATES[int(meters[Meter.GUARD])]
@@ -257,7 +287,7 @@ class EngineClient:
             level_db=float(commands[Command.LEVEL_DB]),
             ceiling_db=float(commands[Command.CEILING_DB]),
             guard=guard,
-            guard_reason="the signal ran away or was no number" if guard == "tripped" else "",
+            guard_reason=GUARD_REASONS[int(meters[Meter.GUARD_REASON])],
             underflows=int(meters[Meter.UNDERFLOWS]),
             callback_load=float(np.nanmedian(loads)) if np.isfinite(loads).any() else 0.0,
             output_peak_db=float(meters[Meter.PEAK_DB]),
@@ -298,6 +328,9 @@ class EngineClient:
 
     def recent(self, frames: int) -> tuple[NDArray[np.float32], NDArray[np.float32]]:
         """Return the last frames before and after the chain, each of shape (k, 2), k at most ``frames``."""
+        if self._is_closed:
+            return np.zeros((0, 2), dtype=np.float32), np.zeros((0, 2), dtype=np.float32)
+        self._send_chain()
         count = int(self._shared.meters[Meter.RECENT_COUNT])
         # A quarter of the ring is left aside: the child goes on writing while this side copies.
         wanted = min(frames, count, RECENT_FRAMES * 3 // 4)
@@ -307,6 +340,9 @@ class EngineClient:
     def drain_capture(self) -> NDArray[np.float32]:
         """Return what left the guard since the last call, shape (k, 2), from the first block that played on."""
         size = self._options.capture_frames
+        if self._is_closed:
+            return np.zeros((0, 2), dtype=np.float32)
+        self._send_chain()
         count = int(self._shared.meters[Meter.CAPTURE_COUNT])
         if size == 0 or count == self._captured:
             return np.zeros((0, 2), dtype=np.float32)
@@ -321,6 +357,7 @@ class EngineClient:
         """Stop, end the child, and remove the shared memory. May be called twice."""
         if self._is_closed:
             return
+        self._last = self._read_status()
         self._shared.commands[Command.IS_PLAYING] = 0.0
         self._is_closed = True
         self._send("close")
@@ -330,6 +367,24 @@ class EngineClient:
         if self._clip is not None:
             self._clip.close()
         self._shared.close()
+
+
+@contextlib.contextmanager
+def _shielded() -> Iterator[None]:
+    """Let processes be started that ignore Ctrl-C and a closed terminal from their first instruction.
+
+    Both signals go to the whole group; this process answers them and ends the others. Only the main thread may do it.
+    """
+    if threading.current_thread() is not threading.main_thread():
+        yield
+        return
+    numbers = [getattr(signal, name) for name in ("SIGINT", "SIGHUP") if hasattr(signal, name)]
+    before = [(number, signal.signal(number, signal.SIG_IGN)) for number in numbers]
+    try:
+        yield
+    finally:
+        for number, handler in before:
+            signal.signal(number, handler)
 
 
 def _straight_through(sample_rate_hz: float) -> Coefficients:

@@ -22,6 +22,7 @@ RUN_AWAY_S = 0.01
 LOWEST_CEILING_DB = -60.0
 
 _SNAP = 1e-6  # a released gain this close to 1 is 1
+_UNITS = 1 << 28  # the envelope in whole numbers: steps of −168 dB
 
 
 def float32_ceiling(ceiling_db: float) -> np.float32:
@@ -51,7 +52,9 @@ class Guard:
         self._release = 1.0 - math.exp(-1.0 / (RELEASE_S * sample_rate_hz))
         size = self.look_ahead_frames
         hann = 0.5 - 0.5 * np.cos(2.0 * np.pi * (np.arange(size + 1) + 0.5) / (size + 1))
-        self._weights: list[float] = (hann / hann.sum()).tolist()
+        # Whole numbers, so that the mean over the look-ahead is exact, and the same however the signal is cut.
+        self._weights: NDArray[np.int64] = np.rint(hann * (_UNITS / 256)).astype(np.int64)
+        self._weight = float(self._weights.sum()) * _UNITS
         self._held = np.zeros((size, channels))
         self._wanted = np.ones(size)  # the gain that each held sample asks for
         self._envelope = np.ones(size)
@@ -154,7 +157,8 @@ class Guard:
         A sample that asks for a gain g holds the envelope at or under g from its arrival until it leaves; the weighted
         mean over the look-ahead that smooths the envelope is then at or under g as it leaves.
         """
-        frames, size = clean.shape[0], self.look_ahead_frames
+        size = self.look_ahead_frames
+        frames = clean.shape[0]
         ceiling = float(self._ceiling)
         peak = np.abs(clean).max(axis=1)
         is_quiet = bool((peak <= ceiling).all()) and self._released == 1.0
@@ -162,12 +166,10 @@ class Guard:
             self.is_limiting = False
             return None
         wanted = np.concatenate([self._wanted, np.where(peak > ceiling, ceiling / np.maximum(peak, ceiling), 1.0)])
-        lowest = np.lib.stride_tricks.sliding_window_view(wanted, size + 1).min(axis=1)
-        envelope = np.concatenate([self._envelope, self._release_from(lowest)])
-        total = np.zeros(frames)
-        for offset, weight in enumerate(self._weights):
-            total += weight * envelope[offset : offset + frames]
-        floor = np.lib.stride_tricks.sliding_window_view(envelope, size + 1).min(axis=1)
+        envelope = np.concatenate([self._envelope, self._release_from(_lowest(wanted, size + 1))])
+        units = np.floor(envelope * _UNITS).astype(np.int64)
+        total = np.convolve(units, self._weights, "valid") / self._weight
+        floor = _lowest(envelope, size + 1)
         self._wanted, self._envelope = wanted[frames:].copy(), envelope[frames:].copy()
         self.is_limiting = bool((floor < 1.0).any())
         return np.where(floor == 1.0, 1.0, np.minimum(total, 1.0))
@@ -204,3 +206,13 @@ class Guard:
         if frames:
             self._fade = int(units[-1])
         return units
+
+
+def _lowest(values: NDArray[np.float64], width: int) -> NDArray[np.float64]:
+    """Return the smallest value of every window, by windows that double."""
+    reach = 1
+    while 2 * reach <= width:
+        values = np.minimum(values[:-reach], values[reach:])
+        reach *= 2
+    rest = width - reach
+    return np.minimum(values[: values.size - rest], values[rest:])

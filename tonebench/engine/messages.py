@@ -16,6 +16,14 @@ class Options:
 
 
 @dataclass(frozen=True, slots=True)
+class ChainMessage:
+    """A chain; the child writes its number back when it has taken it, and only then the next one is sent."""
+
+    number: int
+    coefficients: Coefficients
+
+
+@dataclass(frozen=True, slots=True)
 class ClipMessage:
     """A clip in shared memory, and the chain that it starts with."""
 

@@ -54,6 +54,8 @@ class Player:
         self._level = _Ramp((10.0 ** (STARTING_LEVEL_DB / 20.0),), max(int(LEVEL_RAMP_S * sample_rate_hz), 1))
         self.guard = Guard(sample_rate_hz, OUTPUT_CHANNELS)
         self.position = 0
+        self._left = -1  # where the clip would go on if the loop had not been moved away
+        self._left_frames = 0
         self.is_wanted = False  # play or stop
         self.is_muted = False
         self.loop = Loop(0, clip.shape[0])
@@ -85,7 +87,9 @@ class Player:
         self._level.aim((1.0 if level_db == 0.0 else 10.0 ** (level_db / 20.0),))
 
     def rearm(self) -> None:
-        """Arm the guard again, with the chain at rest: a run-away state would trip it at once."""
+        """Arm a guard that tripped, with the chain at rest: a run-away state would trip it at once."""
+        if not self.guard.is_tripped:
+            return
         self._kernel = Kernel(self._kernel.coefficients, self._kernel.channels)
         self._old_kernel = None
         self.guard.rearm()
@@ -109,7 +113,29 @@ class Player:
         """Take the next frames of the clip, going round at the loop's end."""
         loop = self.loop
         if loop.is_looping and not loop.start <= self.position < loop.end:
+            if self.before.shape[0]:  # something sounds
+                self._left, self._left_frames = self.position, 0
             self.position = loop.start
+        part = self._take_plain(frames, loop)
+        return part if self._left < 0 else self._leave(part)
+
+    def _leave(self, part: NDArray[np.float32]) -> NDArray[np.float32]:
+        """Fade from where the clip was to where the loop has been moved."""
+        weights = self._fade_in[self._left_frames : self._left_frames + part.shape[0], None]
+        count = weights.shape[0]
+        old = np.zeros((count, part.shape[1]))
+        there = self._clip[self._left : self._left + count]
+        old[: there.shape[0]] = there
+        mixed = part.copy()
+        mixed[:count] = weights * part[:count] + (1.0 - weights) * old
+        self._left += count
+        self._left_frames += count
+        if self._left_frames >= self._fade_in.size:
+            self._left = -1
+        return mixed
+
+    def _take_plain(self, frames: int, loop: Loop) -> NDArray[np.float32]:
+        """Take frames as they stand in the clip."""
         end = loop.end if loop.is_looping else self._clip.shape[0]
         if self.position + frames <= end:
             part = self._clip[self.position : self.position + frames]

@@ -50,10 +50,13 @@ class Meter(IntEnum):
     RECENT_COUNT = 12
     CAPTURE_COUNT = 13
     CLIP_NUMBER = 14
+    CHAIN_NUMBER = 15
+    GUARD_REASON = 16
 
 
 PHASES = ("starting", "stopped", "playing", "faulted")
 GUARD_STATES = ("idle", "limiting", "tripped")
+GUARD_REASONS = ("", "the signal ran away, over +30 dBFS", "the signal is no longer a number")
 HEARABLE = ("input", "output", "change")
 
 
