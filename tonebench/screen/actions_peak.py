@@ -1,4 +1,4 @@
-"""The pole to the nearest spectral peak of the clip: searched in a thread, told in numbers."""
+"""The section to the nearest spectral peak of the clip: searched in a thread, told in numbers."""
 
 from typing import TYPE_CHECKING
 
@@ -13,11 +13,11 @@ class PeakActions(LookActions):
     """What p does."""
 
     def action_peak(self) -> None:
-        """Look for the peak nearest the selected pole."""
+        """Look for the peak nearest where the selected section works."""
         self.attempt(self._search)
 
     def _search(self, bench: "Bench") -> str:
-        frequency_hz = bench.pole_frequency_hz()
+        frequency_hz = bench.working_frequency_hz()
         section = bench.session.section
         identity = section.identity if section is not None else 0
 
@@ -35,14 +35,14 @@ class PeakActions(LookActions):
             self.say("the peak was found, but another section is selected now: nothing was moved")
             return
         if peak is None:
-            self.say("no spectral peak stands out near this pole")
+            self.say("no spectral peak stands out near this section")
             return
         self.attempt(lambda bench: self._put(bench, peak), is_edit=True)
 
     @staticmethod
     def _put(bench: "Bench", peak: "Peak") -> str:
-        bench.put_pole(peak.frequency_hz)
+        bench.put_frequency(peak.frequency_hz)
         return (
-            f"pole at the peak: {peak.frequency_hz:.3f} Hz, {peak.level_dbfs:.1f} dBFS, "
+            f"section {bench.session.selected + 1} on the peak: {peak.frequency_hz:.3f} Hz, {peak.level_dbfs:.1f} dBFS, "
             f"{peak.height_db:.1f} dB over its surroundings"
         )

@@ -10,10 +10,10 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Protocol
 
 from tonebench.core.coefficients import Coefficients, from_chain
-from tonebench.core.design import realise
 from tonebench.core.hearing import largest_gain
 from tonebench.core.rates import RateChange, at_rate
 from tonebench.core.roots import ConjugatePair
+from tonebench.core.section import ByKind
 from tonebench.core.shape import set_pole
 from tonebench.core.stability import is_stable
 from tonebench.errors import InvalidValueError
@@ -170,40 +170,40 @@ class Bench:
         self.engine.set_loop(start, end)
         return f"loop: {seconds[0]:g} s to {seconds[1]:g} s"
 
-    def pole_frequency_hz(self) -> float:
-        """Return where the selected section's pole pair lies.
+    def working_frequency_hz(self) -> float:
+        """Return where the selected section works: f0 of a kind, the pole's own angle of a free section.
 
         Raises
         ------
         InvalidValueError
-            If there is no section, or its poles are real.
+            If there is no section, or a free one has no pole pair.
 
         """
-        chain = self.session.chain
-        section = self._section()
-        poles = realise(section, chain.sample_rate_hz).poles
-        if not isinstance(poles, ConjugatePair):
-            raise InvalidValueError(
-                f"section {self.session.selected + 1} has real poles, which stay at 0 Hz or half the sampling rate; "
-                "narrow it first, with the up key"
-            )
-        return poles.angle_rad * chain.sample_rate_hz / (2.0 * math.pi)
+        made = self._section().made
+        if isinstance(made, ByKind):
+            return made.frequency_hz
+        if not isinstance(made.poles, ConjugatePair):
+            raise InvalidValueError(f"section {self.session.selected + 1} has no pole pair to move; type its poles")
+        return made.poles.angle_rad * self.session.chain.sample_rate_hz / (2.0 * math.pi)
 
-    def put_pole(self, frequency_hz: float) -> None:
-        """Turn the selected section's pole pair to a frequency, its radius kept.
+    def put_frequency(self, frequency_hz: float) -> None:
+        """Move the selected section so that it works at a frequency; its width, or its pole's radius, is kept.
+
+        Of a notch it is the zeros that take the hum away, and its poles lie lower: f0 is what must be on the peak.
 
         Raises
         ------
         InvalidValueError
-            If there is no pole pair, or it cannot lie there.
+            If it cannot lie there.
 
         """
-        self.pole_frequency_hz()
         chain, section = self.session.chain, self._section()
-        poles = realise(section, chain.sample_rate_hz).poles
-        if isinstance(poles, ConjugatePair):
+        made = section.made
+        if isinstance(made, ByKind):
+            self.session.put_section(section.with_frequency_hz(frequency_hz))
+        elif isinstance(made.poles, ConjugatePair):
             angle_rad = 2.0 * math.pi * frequency_hz / chain.sample_rate_hz
-            self.session.put_section(set_pole(section, chain.sample_rate_hz, poles.radius, angle_rad))
+            self.session.put_section(set_pole(section, chain.sample_rate_hz, made.poles.radius, angle_rad))
 
     def _section(self) -> "Section":
         section = self.session.section

@@ -56,7 +56,7 @@ SHAPE: Final = (
     Key("equals_sign,plus", "=", "gain(1)", "gain up by one step (also +)", "gain"),
     Key("left_square_bracket", "[", "step(-1)", "larger step"),
     Key("right_square_bracket", "]", "step(1)", "smaller step", "step"),
-    Key("p", "p", "peak", "pole to the clip's spectral peak nearest it", "peak"),
+    Key("p", "p", "peak", "section onto the clip's spectral peak nearest it", "peak"),
 )
 CHAIN: Final = (
     Key("tab", "Tab", "section(1)", "next section", "section", is_priority=True),
