@@ -43,6 +43,6 @@ class PeakActions(LookActions):
     def _put(bench: "Bench", peak: "Peak") -> str:
         bench.put_frequency(peak.frequency_hz)
         return (
-            f"section {bench.session.selected + 1} on the peak: {peak.frequency_hz:.3f} Hz, {peak.level_dbfs:.1f} dBFS, "
-            f"{peak.height_db:.1f} dB over its surroundings"
+            f"section {bench.session.selected + 1} on the peak: {peak.frequency_hz:.3f} Hz, "
+            f"{peak.level_dbfs:.1f} dBFS, {peak.height_db:.1f} dB over its surroundings"
         )
