@@ -21,16 +21,23 @@ def replacing(path: Path, *, is_forced: bool = True) -> Iterator[Path]:
         If the folder cannot be written, or the file is there and ``is_forced`` is false. Nothing is left behind.
 
     """
+    if "\0" in str(path):
+        raise StorageError(f"{str(path)!r} is no name for a file; choose another")
     target = Path(os.path.realpath(path))
-    if target.is_dir():
+    # os.path answers "no" where a part of the path cannot be looked at; making the temporary file then says why.
+    if os.path.isdir(target):  # noqa: PTH112
         raise StorageError(f"{path} is a folder; give the name of a file")
-    if not is_forced and target.exists():
+    if os.path.exists(target) and not os.path.isfile(target):  # noqa: PTH110, PTH113
+        raise StorageError(f"{path} is a device or a pipe, which must stay what it is; give the name of a file")
+    if not is_forced and os.path.exists(target):  # noqa: PTH110
         raise StorageError(f"{path} is already there; give --force to overwrite it, or another name")
     temporary = _temporary_beside(target, path)
     try:
         yield temporary
         _keep_permissions(target, temporary)
         temporary.replace(target)
+    except StorageError:
+        raise  # already in plain words, and perhaps about another file
     except OSError as error:
         raise StorageError(f"{path} could not be written: {error.strerror or error}; nothing was changed") from error
     finally:
@@ -40,7 +47,7 @@ def replacing(path: Path, *, is_forced: bool = True) -> Iterator[Path]:
 
 def _temporary_beside(target: Path, shown: Path) -> Path:
     try:
-        handle, name = tempfile.mkstemp(prefix=f".{target.name[:60]}.", suffix=".part", dir=target.parent)
+        handle, name = tempfile.mkstemp(prefix=".tonebench.", suffix=".part", dir=target.parent)
     except OSError as error:
         raise StorageError(
             f"{shown} could not be written: {error.strerror or error}; choose a folder that exists and is writable"

@@ -138,14 +138,16 @@ def sniff(path: Path) -> str:
             return "other" if path.exists() else "missing"
         with path.open("rb") as file:
             head = file.read(4096)
+    except PermissionError:
+        return "other"  # it is there: nobody may take its name for a new preset
     except (OSError, ValueError):
         return "missing"
     if head.startswith(_AUDIO_MAGIC) or head[:2] == b"\xff\xfb":
         return "audio"
     try:
         text = head.decode("utf-8", "strict" if len(head) < 4096 else "ignore")
-    except UnicodeDecodeError:
-        return _by_suffix(path)
+    except UnicodeDecodeError:  # a .toml in another encoding is still meant as a preset, and refused as one
+        return "preset" if path.suffix == ".toml" else _by_suffix(path)
     if re.search(r"^\s*(tonebench\s*=|\[\[?(chain|section)\]?\])", text, re.MULTILINE):
         return "preset"
     return "preset" if path.suffix == ".toml" else _by_suffix(path)

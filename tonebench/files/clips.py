@@ -5,6 +5,7 @@ soundfile is loaded inside the functions: the screen imports this module on its 
 
 import contextlib
 import os
+import stat
 from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import Path
@@ -55,29 +56,43 @@ class Clip:
 
 
 @contextlib.contextmanager
-def _opened(path: Path) -> Iterator[Any]:
-    """Open a file for reading, with every way of failing in one plain line."""
+def _plainly(path: Path) -> Iterator[None]:
+    """Turn libsndfile's complaints about a file into one plain line."""
     import soundfile  # noqa: PLC0415
 
-    if not path.exists():
-        raise StorageError(f"{path} does not exist; check the path")
-    if path.is_dir():
-        raise StorageError(f"{path} is a folder; give an audio file")
-    if not os.access(path, os.R_OK):
-        raise StorageError(f"{path} may not be read; check its permissions")
     try:
-        with soundfile.SoundFile(str(path)) as file:
-            _check(file, path)
-            yield file
+        yield
     except soundfile.LibsndfileError as error:
         reason = str(error.error_string).strip().rstrip(".") or "unknown format"
         raise ClipError(
             f"{path} is not audio that can be read ({reason}); give a WAV, FLAC, OGG or AIFF file"
         ) from error
-    except (RuntimeError, TypeError) as error:
-        raise ClipError(
-            f"{path} is not audio that can be read ({error}); give a WAV, FLAC, OGG or AIFF file"
-        ) from error
+
+
+@contextlib.contextmanager
+def _opened(path: Path) -> Iterator[Any]:
+    """Open a file for reading; what goes wrong inside the block is not this function's business."""
+    import soundfile  # noqa: PLC0415
+
+    try:
+        is_file = stat.S_ISREG(path.stat().st_mode)
+        with path.open("rb") if is_file else contextlib.nullcontext():
+            pass  # libsndfile calls every failure to open a "system error"; Python says which
+    except FileNotFoundError as error:
+        raise StorageError(f"{path} does not exist; check the path") from error
+    except (OSError, ValueError) as error:
+        reason = getattr(error, "strerror", None) or error
+        raise StorageError(f"{path} cannot be read: {reason}; check the path and its permissions") from error
+    if not is_file:
+        raise StorageError(f"{path} is no regular file; give an audio file")
+    try:
+        with _plainly(path):
+            file = soundfile.SoundFile(str(path))
+    except TypeError as error:  # what soundfile raises for a name that ends in .raw
+        raise ClipError(f"{path} does not say what is in it ({error}); give a WAV, FLAC, OGG or AIFF file") from error
+    with file:
+        _check(file, path)
+        yield file
 
 
 def _check(file: Any, path: Path) -> None:
@@ -105,7 +120,8 @@ def load_clip(path: Path) -> Clip:
             raise ClipError(
                 f"{path} is too long for a clip (at most {minutes:.0f} minutes here); cut out a part, or render"
             )
-        frames = file.read(dtype="float32", always_2d=True)
+        with _plainly(path):
+            frames = file.read(dtype="float32", always_2d=True)
         rate_hz, comment = float(file.samplerate), str(file.comment or "")
     if frames.shape[0] < 1:
         raise ClipError(f"{path} holds no samples; give a clip with sound in it")
@@ -113,10 +129,9 @@ def load_clip(path: Path) -> Clip:
     if frames.shape[1] > 2:
         notes.append(f"{path.name} has {frames.shape[1]} channels; the first two are played")
         frames = np.ascontiguousarray(frames[:, :2])
-    bad = int(np.count_nonzero(~np.isfinite(frames)))
+    bad = _silence_bad(frames)
     if bad:
         notes.append(f"{path.name} holds {bad} samples that are no numbers; they are played as silence")
-        frames = np.nan_to_num(frames, nan=0.0, posinf=0.0, neginf=0.0)
     return Clip(frames, rate_hz, path.name, path, comment, tuple(notes))
 
 
@@ -126,22 +141,36 @@ def describe_file(path: Path) -> str:
         return str(file.comment or "")
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(slots=True)
 class Blocks:
-    """A file that is being read block by block; iterate for float64 blocks of shape (frames, channels)."""
+    """A file that is being read block by block; iterate for float64 blocks of shape (frames, channels).
+
+    Samples that are no numbers become silence, as in a clip; ``bad_samples`` counts them.
+    """
 
     sample_rate_hz: float
     channels: int
     frames: int
     _file: Any
+    _path: Path
     _block_frames: int
+    bad_samples: int = 0
 
     def __iter__(self) -> Iterator[NDArray[np.float64]]:
         while True:
-            block = self._file.read(self._block_frames, dtype="float64", always_2d=True)
+            with _plainly(self._path):
+                block = self._file.read(self._block_frames, dtype="float64", always_2d=True)
             if block.shape[0] == 0:
                 return
+            self.bad_samples += _silence_bad(block)
             yield block
+
+
+def _silence_bad(frames: NDArray[Any]) -> int:
+    """Set what is no finite number to 0 in place, and return how many there were."""
+    is_bad = ~np.isfinite(frames)
+    frames[is_bad] = 0.0
+    return int(np.count_nonzero(is_bad))
 
 
 @contextlib.contextmanager
@@ -155,7 +184,7 @@ def read_blocks(path: Path, block_frames: int) -> Iterator[Blocks]:
 
     """
     with _opened(path) as file:
-        yield Blocks(float(file.samplerate), int(file.channels), int(file.frames), file, block_frames)
+        yield Blocks(float(file.samplerate), int(file.channels), int(file.frames), file, path, block_frames)
 
 
 class ClipWriter:
@@ -191,24 +220,41 @@ class ClipWriter:
 
         with contextlib.ExitStack() as stack:
             temporary = stack.enter_context(replacing(self._path, is_forced=self._is_forced))
-            self._file = stack.enter_context(
-                soundfile.SoundFile(
+            stack.callback(_flush_to_disk, temporary)
+            with self._storage():
+                self._file = soundfile.SoundFile(
                     str(temporary), "w", self._rate_hz, self._channels, subtype="FLOAT", format=self._format
                 )
-            )
+            stack.callback(self._close)
             self._stack = stack.pop_all()
         return self
 
     def write(self, frames: NDArray[np.float32]) -> None:
         """Append frames of shape (n, channels)."""
-        if not frames.shape[0]:
-            return
+        if frames.shape[0]:
+            with self._storage():
+                self._file.write(frames)
+
+    def _close(self) -> None:
+        with self._storage():
+            self._file.close()
+
+    @contextlib.contextmanager
+    def _storage(self) -> Iterator[None]:
+        """Say in plain words what libsndfile complains about: a full disk, a WAV over 4 GB, too many channels."""
         try:
-            self._file.write(frames)
-        except RuntimeError as error:  # libsndfile's own, for a full disk or a WAV over 4 GB
-            raise StorageError(f"{self._path} could not be written: {error}; nothing was changed") from error
+            yield
+        except (RuntimeError, ValueError, OSError) as error:
+            reason = str(getattr(error, "error_string", error)).rstrip(".")
+            raise StorageError(f"{self._path} could not be written: {reason}; nothing was changed") from error
 
     def __exit__(
         self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
     ) -> None:
         self._stack.__exit__(kind, error, trace)
+
+
+def _flush_to_disk(path: Path) -> None:
+    """Have the bytes on the disk before the name: a crash in between leaves the old file whole."""
+    with path.open("rb+") as file:
+        os.fsync(file.fileno())

@@ -1,5 +1,6 @@
 """Presets on disk: load, compare the hearing numbers, save."""
 
+import os
 from dataclasses import dataclass, replace
 from pathlib import Path
 
@@ -56,18 +57,19 @@ def read_text(path: Path) -> str:
         If it cannot be read, is too large, or is not UTF-8.
 
     """
-    if path.is_dir():
-        raise StorageError(f"{path} is a folder; give a preset in it")
     try:
-        content = path.read_bytes() if path.stat().st_size <= LARGEST_BYTES else None
-        text = None if content is None else content.decode("utf-8")
+        with path.open("rb") as file:  # read no further than is allowed: some files have no end
+            content = file.read(LARGEST_BYTES + 1)
+        text = content.decode("utf-8") if len(content) <= LARGEST_BYTES else None
     except FileNotFoundError as error:
         raise StorageError(f"{path} does not exist; check the path, or see tonebench presets") from error
+    except IsADirectoryError as error:
+        raise StorageError(f"{path} is a folder; give a preset in it") from error
     except UnicodeDecodeError as error:
         raise PresetError(f"{path} is not UTF-8 text (byte {error.start}); save it as UTF-8") from error
     except (OSError, ValueError) as error:
         reason = getattr(error, "strerror", None) or error
-        raise StorageError(f"{path} cannot be read: {reason}") from error
+        raise StorageError(f"{path} cannot be read: {reason}; check the path and its permissions") from error
     if text is None:
         raise PresetError(f"{path} is larger than {LARGEST_BYTES // 1000} kB and can be no preset; check the path")
     return text
@@ -118,7 +120,7 @@ def save_preset(preset: Preset, path: Path, *, like: str | None = None, is_force
     for name in (preset.chain.name, *(section.name for section in preset.chain.sections)):
         if complaint := complaint_about_name(name):
             raise PresetError(f"{path}: {complaint}")
-    if like is None and path.is_file():
+    if like is None and is_forced and os.path.isfile(path):  # noqa: PTH113  (answers "no" where it may not look)
         like = read_text(path)
-    write_text_atomically(path, preset_text(preset, like), is_forced=is_forced)
+    write_text_atomically(path, preset_text(preset, like, name=str(path)), is_forced=is_forced)
     return replace(preset, written_hearing=rounded_hearing(preset.chain))

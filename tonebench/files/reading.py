@@ -1,7 +1,8 @@
 """From a preset's text to its value, with every complaint naming line and key."""
 
+import contextlib
 import difflib
-import tomllib
+import math
 from collections.abc import Callable, Mapping
 from decimal import Decimal
 from typing import Any, NoReturn
@@ -21,10 +22,12 @@ from tonebench.files.keys import (
 )
 from tonebench.files.names import check_name, check_prefix
 from tonebench.files.segments import Segment, split_segments
+from tonebench.files.toml_text import toml_values
 from tonebench.session.preset import FORMAT_VERSION, Acceptance, ExportRequest, Preset
 from tonebench.target.arithmetic import Overflow, Products, Rounding, Target, parse_format, parse_target
 
 _REQUIRED: Any = object()
+_LARGEST_WHOLE = 10**18  # far over any key's own limit, and short enough to be shown
 
 
 class Reader:
@@ -48,7 +51,7 @@ class Reader:
             return value
         if isinstance(value, bool) or not isinstance(value, int | Decimal):
             self.refuse(key, must_be(key, "a number", _shown(value)))
-        return float(value)
+        return self.double(key, value)
 
     def whole(self, key: str, default: Any = _REQUIRED) -> Any:
         """Return an int."""
@@ -57,7 +60,15 @@ class Reader:
             return value
         if isinstance(value, bool) or not isinstance(value, int):
             self.refuse(key, must_be(key, "a whole number", _shown(value)))
+        if abs(value) > _LARGEST_WHOLE:
+            self.refuse(key, f"{key} must be a whole number of at most 18 digits, got a longer one; shorten it")
         return value
+
+    def double(self, key: str, value: int | Decimal) -> float:
+        """Return a number as a double, or refuse what none can hold."""
+        with contextlib.suppress(OverflowError):
+            return float(value)
+        return self.refuse(key, f"{key} must be a number of at most 300 digits, got a longer one; shorten it")
 
     def flag(self, key: str) -> bool:
         """Return true or false, false where it is left out."""
@@ -91,7 +102,10 @@ class Reader:
 
 
 def _shown(value: Any) -> Any:
-    return float(value) if isinstance(value, Decimal) else value
+    """Return what a complaint shows; a whole number may be too long for Python to write out."""
+    if isinstance(value, Decimal):
+        return float(value)
+    return math.inf if isinstance(value, int) and abs(value) > _LARGEST_WHOLE else value
 
 
 def read_preset(text: str, file_name: str) -> tuple[Preset, tuple[str, ...]]:
@@ -103,10 +117,7 @@ def read_preset(text: str, file_name: str) -> tuple[Preset, tuple[str, ...]]:
         With file, line, key, what it must be, what it was, and what to do.
 
     """
-    try:
-        values = tomllib.loads(text, parse_float=Decimal)
-    except tomllib.TOMLDecodeError as error:
-        raise PresetError(_syntax(file_name, text, str(error))) from error
+    values = toml_values(text, file_name)
     segments = split_segments(text)
     top = Reader(file_name, segments[0], values, "the top of the file")
     version = top.whole("tonebench")
@@ -115,14 +126,6 @@ def read_preset(text: str, file_name: str) -> tuple[Preset, tuple[str, ...]]:
     singles, repeated = _tables(file_name, segments, values)
     preset = _preset(singles, repeated)
     return preset, _slips(values)
-
-
-def _syntax(file_name: str, text: str, message: str) -> str:
-    """Put the line that tomllib names in front, as all other complaints have it."""
-    reason, _, place = message.partition(" (at ")
-    line = place.partition("line ")[2].partition(",")[0]
-    number = line if line.isdecimal() else str(len(text.splitlines()) or 1)
-    return f"{file_name}: line {number}: not valid TOML: {reason}; mend that line"
 
 
 def _tables(
@@ -229,7 +232,8 @@ def _width(table: Reader, kind: Kind) -> Width | None:
     key = WidthKey(keys[0])
     if key not in allowed_widths(kind):
         choices = ", ".join(allowed_widths(kind))
-        table.refuse(key, must_be(key, f"left out: it has no meaning for a {kind}; give one of {choices}", key))
+        rule = f"left out: it has no meaning for a {kind}"
+        table.refuse(key, must_be(key, rule, _shown(table.values[key]), f"give one of {choices}"))
     value = table.number(key)
     width: Width = table.attempt(key, lambda: Width(key, value))
     return width
@@ -250,7 +254,7 @@ def _roots(table: Reader, key: str) -> Roots:
     if key not in table.values:
         return NO_ROOTS
     content = table.values[key]
-    rule = f"{{ radius = ..., angle_deg = ... }} or {{ real = [...] }}"  # noqa: F541
+    rule = "{ radius = ..., angle_deg = ... } or { real = [...] }"
     if not isinstance(content, dict):
         table.refuse(key, must_be(key, rule, _shown(content)))
     if "real" in content:
@@ -264,8 +268,8 @@ def _roots(table: Reader, key: str) -> Roots:
             table.refuse(key, must_be(f"{part} of {key}", "a number", _shown(value)))
     angle_deg = Decimal(content["angle_deg"])
     if not angle_deg.is_finite() or not 0 <= angle_deg <= 180:
-        table.refuse(key, must_be(f"angle_deg of {key}", "between 0 and 180", float(angle_deg)))
-    radius, angle = float(content["radius"]), angle_from_degrees(angle_deg)
+        table.refuse(key, must_be(f"angle_deg of {key}", "between 0 and 180", _shown(content["angle_deg"])))
+    radius, angle = table.double(key, content["radius"]), angle_from_degrees(angle_deg)
     return table.attempt(key, lambda: ConjugatePair(radius, angle))  # type: ignore[no-any-return]
 
 
@@ -275,7 +279,7 @@ def _number_list(table: Reader, key: str, content: Any) -> tuple[float, ...]:
     for one in content:
         if isinstance(one, bool) or not isinstance(one, int | Decimal):
             table.refuse(key, must_be(key, "a list of numbers in [ ]", _shown(one)))
-    return tuple(float(one) for one in content)
+    return tuple(table.double(key, one) for one in content)
 
 
 def _numbers(table: Reader, key: str) -> tuple[float, ...]:
@@ -323,6 +327,8 @@ def _acceptance(table: Reader) -> Acceptance:
     if isinstance(section, bool) or not isinstance(section, int | str):
         table.refuse("section", must_be("section", "a section's name or number", _shown(section)))
     up_to = table.number("up_to", None)
+    if up_to is not None and math.isnan(up_to):
+        table.refuse("up_to", must_be("up_to", "a number in the finding's unit", up_to, "or leave it out"))
     code, because = table.text("code"), table.text("because")
     accepted: Acceptance = table.attempt("code", lambda: Acceptance(code, because, str(section), up_to))
     return accepted

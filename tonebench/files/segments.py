@@ -7,9 +7,16 @@ tables are added, removed or put in another order. Text that is not touched stay
 import re
 from dataclasses import dataclass
 
-_HEADER = re.compile(r"^\s*(\[\[?)\s*([A-Za-z0-9_.\-\"' ]+?)\s*\]\]?\s*(#.*)?$")
+# The first part of a header's name, and whether more parts follow. A line outside strings and brackets that begins
+# with a bracket is a header, whatever is in its name.
+_HEADER = re.compile(r"""^\s*(\[\[?)\s*("(?:\\.|[^"\\])*"|'[^']*'|[A-Za-z0-9_\-]+)\s*(\.)?""")
 _KEY = re.compile(r"^\s*([A-Za-z0-9_\-]+|\"[^\"]*\"|'[^']*')\s*(\.[^=]*)?=")
-_TRIPLE = re.compile(r'"""|' + r"'''")
+_TOKEN = re.compile(r'"""|\'\'\'|"(?:\\.|[^"\\])*"|\'[^\']*\'|[#\[\]{}]')
+# Up to two quotes may stand right before the three that close.
+_CLOSING = {
+    '"""': re.compile(r'(?:\\.|[^\\])*?"{3,5}', re.DOTALL),
+    "'''": re.compile(r"[^\0]*?'{3,5}"),
+}
 
 
 @dataclass(slots=True)
@@ -52,47 +59,66 @@ class Segment:
 
 
 def split_segments(text: str) -> list[Segment]:
-    """Split a text at its table headers; joining the segments' texts gives the text back."""
+    """Split a valid TOML text at its table headers; joining the segments' texts gives the text back."""
     segments = [Segment("", is_repeated=False, lines=[], first_line=1, header_line=1)]
-    is_inside_string = False
-    for number, line in enumerate(text.splitlines(keepends=True), start=1):
-        match = None if is_inside_string else _HEADER.match(line.rstrip("\r\n"))
-        if len(_TRIPLE.findall(line)) % 2:
-            is_inside_string = not is_inside_string
+    quote, depth, idle = "", 0, 0
+    # Only a line feed ends a line in TOML; splitlines would end one at U+2028 inside a comment, too.
+    for number, line in enumerate(re.findall(r"[^\n]*\n|[^\n]+", text), start=1):
+        is_outside = not quote and depth == 0
+        quote, depth = _scanned(line, quote, depth)
+        match = _HEADER.match(line) if is_outside else None
         last = segments[-1]
-        if match is None or _belongs_to(match, last):
+        if match is None or (match[3] and _plain(match[2]) == last.table):  # [section.more] is part of its section
             last.lines.append(line)
+            is_idle = is_outside and (not line.strip() or line.lstrip().startswith("#"))
+            idle = idle + 1 if is_idle else 0
             continue
-        above = _comments_above(last)
-        segments.append(
-            Segment(
-                table=_first_part(match[2]),
-                is_repeated=match[1] == "[[",
-                lines=[*above, line],
-                first_line=number - len(above),
-                header_line=number,
-            )
-        )
+        above = _comments_above(last, idle)
+        idle = 0
+        first = number - len(above)
+        segments.append(Segment(_plain(match[2]), match[1] == "[[", [*above, line], first, number))
     return segments
 
 
-def _belongs_to(match: re.Match[str], last: Segment) -> bool:
-    """Tell whether a header such as ``[section.more]`` is part of the table above it."""
-    return "." in match[2] and _first_part(match[2]) == last.table
+def _scanned(line: str, quote: str, depth: int) -> tuple[str, int]:
+    """Return which long string and how many brackets are still open at the end of a line."""
+    position = 0
+    while position < len(line):
+        if quote:
+            closing = _CLOSING[quote].match(line, position)
+            if closing is None:
+                return quote, depth
+            position, quote = closing.end(), ""
+            continue
+        token = _TOKEN.search(line, position)
+        if token is None or token[0] == "#":
+            break
+        position = token.end()
+        if token[0] in _CLOSING:
+            quote = token[0]
+        elif token[0] in ("[", "{"):
+            depth += 1
+        elif token[0] in ("]", "}"):
+            depth -= 1
+    return quote, depth
 
 
-def _first_part(name: str) -> str:
-    return name.split(".", maxsplit=1)[0].strip().strip("\"'")
+def _plain(name: str) -> str:
+    return name.strip("\"'")
 
 
-def _comments_above(segment: Segment) -> list[str]:
-    """Take the comment lines that stand directly above a header, and the blank lines above those, off a segment."""
+def _comments_above(segment: Segment, idle: int) -> list[str]:
+    """Take the comment lines directly above a header, and the blank lines above those, off a segment.
+
+    ``idle`` is how many of its last lines are blank or comments.
+    """
     start = len(segment.lines)
-    while start > 0 and segment.lines[start - 1].lstrip().startswith("#"):
+    lowest = start - idle
+    while start > lowest and segment.lines[start - 1].lstrip().startswith("#"):
         start -= 1
     if segment.table == "" and start == 0:
         return []  # a comment at the very top is the file's, not the first table's
-    while start > 0 and not segment.lines[start - 1].strip():
+    while start > lowest and not segment.lines[start - 1].strip():
         start -= 1
     taken = segment.lines[start:]
     del segment.lines[start:]

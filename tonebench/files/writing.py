@@ -1,39 +1,33 @@
 """From a preset's value to its text, keeping what people wrote.
 
-Comments, unknown keys and the form of every number that has not changed survive byte for byte; tomlkit edits one
-table at a time, and tables are added, removed and put in order as whole segments.
+Comments, unknown keys and the form of every number that has not changed survive byte for byte; ``editing`` changes one
+table at a time, and tables are added, removed and put in order as whole segments, in the places that they have.
 """
 
+import re
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
-from decimal import Decimal
 from typing import Any
-
-import tomlkit
-from tomlkit.items import Float, InlineTable, Table, Trivia
 
 from tonebench.core.chain import Chain
 from tonebench.core.roots import ConjugatePair, Roots
 from tonebench.core.section import ByHand, ByKind, Section
 from tonebench.errors import PresetError
 from tonebench.files.caution import caution_lines, is_caution, rounded_hearing
-from tonebench.files.keys import REPEATED_TABLES, SINGLE_TABLES, angle_from_degrees, degrees_text, plain_number
+from tonebench.files.editing import Angle, edited
+from tonebench.files.keys import SINGLE_TABLES, plain_number
+from tonebench.files.pairing import continued
 from tonebench.files.reading import read_preset
 from tonebench.files.segments import Segment, split_segments
-from tonebench.session.preset import FORMAT_VERSION, Acceptance, ExportRequest, Preset
+from tonebench.session.preset import FORMAT_VERSION, ExportRequest, Preset
 
-_NEW_TEXT = f"tonebench = {FORMAT_VERSION}                      # version of the format\n"
+_NEW_TEXT = (
+    "# A chain of filter sections for tonebench. Comments, and keys that it does not know, are kept when it is saved.\n"
+    f"tonebench = {FORMAT_VERSION}                      # version of the format\n"
+)
 _ORDER = ("", "chain", "section", "target", "build", "export", "accept", "hearing")
 
 
-@dataclass(frozen=True, slots=True)
-class Angle:
-    """An angle that is written in degrees and must come back as the same radians."""
-
-    angle_rad: float
-
-
-def preset_text(preset: Preset, like: str | None = None) -> str:
+def preset_text(preset: Preset, like: str | None = None, *, name: str = "the file") -> str:
     """Return the text of a preset.
 
     Parameters
@@ -42,30 +36,62 @@ def preset_text(preset: Preset, like: str | None = None) -> str:
         Its hearing numbers are computed here, whatever ``written_hearing`` says.
     like : str, optional
         The text as it stands in the file; what has not changed is kept.
+    name : str
+        Stands for ``like`` in messages.
 
     Raises
     ------
     PresetError
-        If ``like`` cannot be edited without losing something.
+        If ``like`` is no preset or cannot be edited without losing something, or the preset holds what none may.
 
     """
+    old = None if like is None else read_preset(like, name)[0]
     segments = split_segments(_NEW_TEXT if like is None else like)
-    old = None if like is None else read_preset(like, "the file")[0]
-    result = [segment.text for segment in segments if segment.table not in _ORDER[1:]]
-    head, others = result[0], result[1:]
-    parts = [head]
-    parts += [_single("chain", _chain_values(preset.chain), segments)]
-    parts += _repeated("section", preset.chain.sections, old.chain.sections if old else (), segments)
-    parts += [_single("target", _target_values(preset), segments)]
+    texts = {
+        "chain": [_single("chain", _chain_values(preset.chain), segments)],
+        "section": _repeated("section", preset.chain.sections, old.chain.sections if old else (), segments),
+        "target": [_single("target", _target_values(preset), segments)],
+        "build": [],
+        "export": _repeated("export", preset.exports, old.exports if old else (), segments),
+        "accept": _repeated("accept", preset.acceptances, old.acceptances if old else (), segments),
+        "hearing": [_hearing(preset.chain, segments)],
+    }
     if preset.build_rates_hz or any(one.table == "build" for one in segments):
         rates = [plain_number(rate_hz) for rate_hz in preset.build_rates_hz]
-        parts += [_single("build", {"sample_rates_hz": rates}, segments)]
-    parts += _repeated("export", preset.exports, old.exports if old else (), segments)
-    parts += _repeated("accept", preset.acceptances, old.acceptances if old else (), segments)
-    parts += [*others, _hearing(preset.chain, segments)]
+        texts["build"] = [_single("build", {"sample_rates_hz": rates}, segments)]
+    parts = _arranged(segments, texts)
     text = "".join(part if part.endswith("\n") or not part else part + "\n" for part in parts)
+    if like is not None and "\n" in like and like.count("\n") == like.count("\r\n"):
+        text = re.sub(r"(?<!\r)\n", "\r\n", text)  # what was added ends its lines as the file does
     _verify(preset, text)
     return text
+
+
+def _arranged(segments: Sequence[Segment], texts: Mapping[str, list[str]]) -> list[str]:
+    """Put each table's new texts in the places of its old ones; a new table follows those before it in order."""
+    last = {segment.table: index for index, segment in enumerate(segments)}
+    waiting = {table: list(new) for table, new in texts.items()}
+    parts: list[tuple[str, str]] = []
+    for index, segment in enumerate(segments):
+        if segment.table not in waiting:
+            parts.append((segment.table, segment.text))
+            continue
+        queue = waiting[segment.table]
+        count = len(queue) if index == last[segment.table] else 1
+        parts += [(segment.table, text) for text in queue[:count]]
+        del queue[:count]
+    for position, table in enumerate(_ORDER):
+        if waiting.get(table):
+            before = [index for index, (one, _) in enumerate(parts) if one in _ORDER[:position]]
+            place = len(parts) if table == "hearing" else before[-1] + 1
+            parts[place:place] = [(table, text) for text in waiting[table]]
+    return [text for _, text in parts]
+
+
+def _single(table: str, values: Mapping[str, Any], segments: list[Segment]) -> str:
+    found = [one for one in segments if one.table == table]
+    text = found[0].text if found else f"\n[{table}]\n"
+    return edited(text, table, values, is_repeated=False)
 
 
 def _verify(preset: Preset, text: str) -> None:
@@ -81,96 +107,17 @@ def _verify(preset: Preset, text: str) -> None:
         raise PresetError("this file's layout cannot be edited without loss; save under another name")
 
 
-def _single(table: str, values: Mapping[str, Any], segments: list[Segment]) -> str:
-    found = [one for one in segments if one.table == table]
-    text = found[0].text if found else f"\n[{table}]\n"
-    return _edited(text, table, values, is_repeated=False)
-
-
 def _repeated(table: str, new: Sequence[Any], old: Sequence[Any], segments: list[Segment]) -> list[str]:
     """Return the text of each entry, built on the segment of the old entry that it continues."""
     found = [one.text for one in segments if one.table == table]
     texts = []
-    for entry, index in zip(new, _continued(new, old), strict=True):
+    for entry, index in zip(new, continued(new, old), strict=True):
         text = f"\n[[{table}]]\n" if index is None else found[index]
         values = _entry_values(entry)
         texts.append(
-            text if index is not None and old[index] == entry else _edited(text, table, values, is_repeated=True)
+            text if index is not None and old[index] == entry else edited(text, table, values, is_repeated=True)
         )
     return texts
-
-
-def _continued(new: Sequence[Any], old: Sequence[Any]) -> list[int | None]:
-    """Pair each new entry with an old one: first the equal ones, then by kind and name, then in order."""
-    free = list(range(len(old)))
-    pairs: list[int | None] = [None] * len(new)
-    tests = (lambda a, b: a == b, _is_alike, lambda a, b: type(a) is type(b) and len(new) == len(old))
-    for is_same in tests:
-        for position, entry in enumerate(new):
-            if pairs[position] is not None:
-                continue
-            match = next((index for index in free if is_same(entry, old[index])), None)
-            if match is not None:
-                pairs[position] = match
-                free.remove(match)
-    return pairs
-
-
-def _is_alike(one: Any, other: Any) -> bool:
-    if isinstance(one, Section) and isinstance(other, Section):
-        return one.kind == other.kind and (one.name == other.name or bool(one.name) != bool(other.name))
-    if isinstance(one, ExportRequest) and isinstance(other, ExportRequest):
-        return one.file == other.file
-    return isinstance(one, Acceptance) and isinstance(other, Acceptance) and one.code == other.code
-
-
-def _edited(text: str, table: str, values: Mapping[str, Any], *, is_repeated: bool) -> str:
-    """Return a segment with its known keys set to these values; defaults that were never written stay unwritten."""
-    document = tomlkit.parse(text)
-    content: Any = document[table][0] if is_repeated else document[table]
-    known = {**SINGLE_TABLES, **REPEATED_TABLES}[table]
-    for key, default in known.items():
-        value = values.get(key)
-        is_default = value is None or value == default
-        if key not in content:
-            if not is_default:
-                _put(content, key, value)
-        elif value is None and default is None:
-            del content[key]
-        elif not _is_same(content[key], default if value is None else value):
-            content[key] = _item(default if value is None else value)
-    return tomlkit.dumps(document)
-
-
-def _put(content: Table, key: str, value: Any) -> None:
-    content.add(key, _item(value))
-
-
-def _is_same(item: Any, value: Any) -> bool:
-    if isinstance(value, Mapping):
-        plain = dict(item) if isinstance(item, dict) else {}
-        return all(key in plain and _is_same(plain[key], one) for key, one in value.items()) and not (
-            {"radius", "angle_deg", "real"} & (plain.keys() - value.keys())
-        )
-    if isinstance(value, Angle):
-        return angle_from_degrees(Decimal(item.as_string())) == value.angle_rad
-    if isinstance(value, list):
-        return isinstance(item, list) and [float(one) for one in item] == [float(one) for one in value]
-    if isinstance(value, bool) or isinstance(item, bool):
-        return bool(item is value or (isinstance(item, bool) and item == value))
-    return bool(item == value)
-
-
-def _item(value: Any) -> Any:
-    if isinstance(value, Mapping):
-        table: InlineTable = tomlkit.inline_table()
-        for key, one in value.items():
-            table.append(key, _item(one))
-        return table
-    if isinstance(value, Angle):
-        text = degrees_text(value.angle_rad)
-        return Float(float(text), Trivia(), text)
-    return tomlkit.item(value)
 
 
 def _entry_values(entry: Any) -> dict[str, Any]:
@@ -246,4 +193,4 @@ def _hearing(chain: Chain, segments: list[Segment]) -> str:
     lines = list(found[0].lines) if found else ["\n", "[hearing]\n"]
     header = next(index for index, line in enumerate(lines) if line.lstrip().startswith("["))
     kept = [line for line in lines[:header] if not is_caution(line)]
-    return _edited("".join([*kept, *caution_lines(numbers), *lines[header:]]), "hearing", values, is_repeated=False)
+    return edited("".join([*kept, *caution_lines(numbers), *lines[header:]]), "hearing", values, is_repeated=False)

@@ -4,6 +4,7 @@ A windowed transform of a long part finds the candidates; the chosen one is refi
 between the bins, which no interpolation formula has to be trusted for.
 """
 
+import itertools
 import math
 from dataclasses import dataclass
 
@@ -18,6 +19,8 @@ STANDS_OUT_DB = 14.0
 WITHIN_DB = 70.0  # of the strongest: what lies deeper is a skirt or a trace that nobody means (judgement)
 _LOBE_BINS = 4  # the Blackman–Harris window's main lobe reaches four bins to each side
 _AROUND_OCTAVES = 0.25
+_FLOOR_SLACK_DB = 3.0  # the surroundings of a bin cover parts of cells, whose medians scatter
+_ENOUGH_BINS = 4096  # for a median that scatters by 0.1 dB
 _SILENCE = 1e-9  # −180 dBFS
 
 
@@ -69,9 +72,8 @@ def nearest_peak(samples: NDArray[np.floating], sample_rate_hz: float, near_hz: 
     level_db = 20.0 * np.log10(np.maximum(np.abs(np.fft.rfft(windowed)) * scale, _SILENCE))
     step_hz = sample_rate_hz / mono.size
     lowest_db = max(float(level_db.max()) - WITHIN_DB, 20.0 * math.log10(_SILENCE) + STANDS_OUT_DB)
-    for bin_number in _candidates(level_db, near_hz / step_hz):
-        height_db = level_db[bin_number] - _around_db(level_db, bin_number)
-        if height_db >= STANDS_OUT_DB and level_db[bin_number] > lowest_db:
+    for bin_number in _candidates(level_db, near_hz / step_hz, lowest_db):
+        if level_db[bin_number] - _around_db(level_db, bin_number) >= STANDS_OUT_DB:
             frequency_hz, amplitude = _refined(windowed, sample_rate_hz, bin_number)
             level = 20.0 * math.log10(max(amplitude * scale, _SILENCE))
             return Peak(frequency_hz, level, float(level - _around_db(level_db, bin_number)))
@@ -85,20 +87,41 @@ def _blackman_harris(size: int) -> NDArray[np.float64]:
     return np.asarray(sum(term * np.cos(order * phase) for order, term in enumerate(terms)), dtype=np.float64)
 
 
-def _candidates(level_db: NDArray[np.float64], near_bin: float) -> list[int]:
-    """Return the bins that are the largest within a main lobe, the nearest by ratio first."""
+def _candidates(level_db: NDArray[np.float64], near_bin: float, lowest_db: float) -> list[int]:
+    """Return the bins that are the largest within a main lobe and may stand out, the nearest by ratio first."""
     middle = np.arange(_LOBE_BINS, level_db.size - _LOBE_BINS)
     windows = np.lib.stride_tricks.sliding_window_view(level_db, 2 * _LOBE_BINS + 1)
     tops = middle[windows.argmax(axis=1) == _LOBE_BINS]
+    may_stand_out = level_db[tops] - _low_floor_db(level_db)[tops] >= STANDS_OUT_DB - _FLOOR_SLACK_DB
+    tops = tops[may_stand_out & (level_db[tops] > lowest_db)]
     order = np.argsort(np.abs(np.log(tops / near_bin)), kind="stable")
     return [int(one) for one in tops[order]]
 
 
+def _low_floor_db(level_db: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Return for each bin a level under the median around it: the lowest of the medians of the cells around.
+
+    A median for each of the many tops of a noise would take seconds; this leaves a handful of them.
+    """
+    edges = [0]
+    while edges[-1] < level_db.size:
+        edges.append(min(edges[-1] + _reach_bins(edges[-1]), level_db.size))
+    medians = np.array([np.median(level_db[low:high]) for low, high in itertools.pairwise(edges)])
+    padded = np.pad(medians, 2, mode="edge")
+    return np.repeat(np.lib.stride_tricks.sliding_window_view(padded, 5).min(axis=1), np.diff(edges))
+
+
+def _reach_bins(bin_number: int) -> int:
+    """Return how far to each side the surroundings of a bin reach."""
+    return max(int(bin_number * (2.0**_AROUND_OCTAVES - 1.0)), 8 * _LOBE_BINS)
+
+
 def _around_db(level_db: NDArray[np.float64], bin_number: int) -> float:
-    """Return the median level around a bin, its main lobe left out."""
-    reach = max(round(bin_number * (2.0**_AROUND_OCTAVES - 1.0)), 8 * _LOBE_BINS)
+    """Return the median level around a bin, its main lobe left out; a wide band is thinned evenly."""
+    reach = _reach_bins(bin_number)
     low, high = max(bin_number - reach, 1), min(bin_number + reach + 1, level_db.size)
     around = np.concatenate([level_db[low : bin_number - _LOBE_BINS], level_db[bin_number + _LOBE_BINS + 1 : high]])
+    around = around[:: around.size // _ENOUGH_BINS + 1]
     return float(np.median(around)) if around.size else float(level_db[bin_number])
 
 

@@ -1,8 +1,12 @@
 """What changed between two presets, one plain line per change."""
 
+import math
+
 from tonebench.core.chain import Chain
+from tonebench.core.roots import ConjugatePair, Roots
 from tonebench.core.section import ByHand, ByKind, Section
 from tonebench.session.preset import Preset
+from tonebench.target.arithmetic import Target
 
 
 def describe_changes(before: Preset, after: Preset) -> tuple[str, ...]:
@@ -13,11 +17,11 @@ def describe_changes(before: Preset, after: Preset) -> tuple[str, ...]:
     """
     lines = _chain_changes(before.chain, after.chain)
     if before.target != after.target:
-        lines.append(f"target {before.target} is now {after.target}")
+        lines.append(f"target {_target_words(before.target)} is now {_target_words(after.target)}")
     if before.build_rates_hz != after.build_rates_hz:
-        lines.append("build rates are now " + (", ".join(f"{one:g}" for one in after.build_rates_hz) or "none"))
+        lines.append("build rates are now " + (", ".join(_number(one) for one in after.build_rates_hz) or "none"))
     if before.exports != after.exports:
-        lines.append(f"exports: {len(before.exports)} before, {len(after.exports)} now, or changed in place")
+        lines.append("exported files changed")
     if before.acceptances != after.acceptances:
         lines.append("accepted findings changed")
     return tuple(lines)
@@ -25,13 +29,19 @@ def describe_changes(before: Preset, after: Preset) -> tuple[str, ...]:
 
 def _chain_changes(before: Chain, after: Chain) -> list[str]:
     lines = []
-    for name, unit in (("name", ""), ("sample_rate_hz", " Hz"), ("gain_db", " dB"), ("combine", "")):
-        then, now = getattr(before, name), getattr(after, name)
+    if before.name != after.name:
+        lines.append(f'chain name: "{before.name}" is now "{after.name}"')
+    for words, then, now, unit in (
+        ("sample rate", before.sample_rate_hz, after.sample_rate_hz, "Hz"),
+        ("gain", before.gain_db, after.gain_db, "dB"),
+    ):
         if then != now:
-            lines.append(f"chain {name}: {then} is now {now}{unit}")
+            lines.append(f"chain {words}: {_number(then)} is now {_number(now)} {unit}")
+    if before.combine != after.combine:
+        lines.append(f"chain: {before.combine} is now {after.combine}")
     if before.direct_gain_db != after.direct_gain_db:
-        now = "left out" if after.direct_gain_db is None else f"added at {after.direct_gain_db:g} dB"
-        lines.append(f"the input itself is now {now}")
+        level = "left out" if after.direct_gain_db is None else f"added at {_number(after.direct_gain_db)} dB"
+        lines.append(f"the input itself is now {level}")
     return lines + _section_changes(before.sections, after.sections)
 
 
@@ -50,7 +60,7 @@ def _section_changes(before: tuple[Section, ...], after: tuple[Section, ...]) ->
             lines.append(f"section {number} removed: {_words(old[offset])}")
         elif offset >= len(old):
             lines.append(f"section {number} added: {_words(new[offset])}")
-        else:
+        elif old[offset] != new[offset]:
             lines.append(f"section {number}: {_words(old[offset])} is now {_words(new[offset])}")
     return lines
 
@@ -59,18 +69,66 @@ def _words(section: Section) -> str:
     parts = [f'"{section.name}"'] if section.name else []
     parts.append(section.kind.value)
     made = section.made
-    if isinstance(made, ByKind):
-        parts.append(f"{made.frequency_hz:.10g} Hz")
-        if made.width is not None:
-            parts.append(f"{made.width.key} {made.width.value:.10g}")
-    if made.gain_db or isinstance(made, ByHand):
-        parts.append(f"{made.gain_db:+.10g} dB")
-    if isinstance(made, ByHand):
-        parts.append(f"poles {made.poles}, zeros {made.zeros}")
+    parts += _made_words(made) if isinstance(made, ByKind) else _hand_words(made)
     if section.polarity < 0:
         parts.append("polarity -1")
     if section.delay_samples:
         parts.append(f"delay {section.delay_samples}")
     if section.is_bypassed:
         parts.append("bypassed")
+    return " ".join(parts)
+
+
+def _made_words(made: ByKind) -> list[str]:
+    parts = [f"{_number(made.frequency_hz)} Hz"]
+    if made.is_pole_frequency:
+        parts.append("of the pole")
+    if made.order == 1:
+        parts.append("order 1")
+    if made.width is not None:
+        parts.append(f"{made.width.key} {_number(made.width.value)}")
+    if made.gain_db:
+        parts.append(f"{_signed(made.gain_db)} dB")
+    return parts
+
+
+def _hand_words(made: ByHand) -> list[str]:
+    parts = [f"{_signed(made.gain_db)} dB"]
+    if made.gain_at_hz is not None:
+        parts.append(f"at {_number(made.gain_at_hz)} Hz")
+    return [*parts, f"poles {_root_words(made.poles)}", f"zeros {_root_words(made.zeros)}"]
+
+
+def _root_words(roots: Roots) -> str:
+    if isinstance(roots, ConjugatePair):
+        return f"{_number(roots.radius)} at {_number(math.degrees(roots.angle_rad))} deg"
+    return " ".join(_number(value) for value in roots.values) or "none"
+
+
+def _number(value: float) -> str:
+    """Return the shortest text that is this number, so that two different ones never read the same."""
+    return f"{value:.15g}" if float(f"{value:.15g}") == value else repr(value)
+
+
+def _signed(value: float) -> str:
+    return _number(value) if value < 0.0 else f"+{_number(abs(value))}"
+
+
+def _target_words(target: Target) -> str:
+    """Return FORMAT/STRUCTURE and every rule that is not the usual one."""
+    usual = Target(target.number_format, target.structure)
+    parts = [str(target)]
+    if target.accumulator_bits is not None:
+        parts.append(f"accumulator {target.accumulator_bits} bits")
+    for words, now, then in (
+        ("rounding", target.rounding, usual.rounding),
+        ("products", target.products, usual.products),
+        ("overflow", target.overflow, usual.overflow),
+    ):
+        if now != then:
+            parts.append(f"{words} {now.value}")
+    if target.is_fused:
+        parts.append("fused")
+    if target.is_flushing_subnormals:
+        parts.append("flushing subnormals")
     return " ".join(parts)

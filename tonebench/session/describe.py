@@ -35,7 +35,7 @@ def format_ring(ring_s: float) -> str:
 def format_radius(radius: float) -> str:
     """Return a radius with three digits of its distance from 1, grouped in threes: ``0.999 67``."""
     distance = abs(1.0 - radius)
-    decimals = 5 if distance == 0.0 else min(max(5, 2 - math.floor(math.log10(distance))), 15)
+    decimals = 5 if distance == 0.0 else min(max(5, 2 - math.floor(math.log10(distance) + 1e-9)), 15)
     return _grouped(f"{radius:.{decimals}f}")
 
 
@@ -47,8 +47,8 @@ def format_angle_deg(angle_rad: float) -> str:
 
 
 def format_gain_db(gain_db: float) -> str:
-    """Return a signed level: ``+1.5 dB``, ``-4.0 dB``, ``0 dB``."""
-    if gain_db == 0.0:
+    """Return a signed level: ``+1.5 dB``, ``-4.0 dB``, ``0 dB`` for less than a hundredth."""
+    if round(gain_db, 2) == 0.0:
         return "0 dB"
     decimals = 1 if round(gain_db, 1) == round(gain_db, 3) else 2
     return f"{gain_db:+.{decimals}f} dB"

@@ -19,12 +19,12 @@ def take_kind(cursor: Cursor) -> Kind | None:
     if first is None or first.sort != "word":
         return None
     if second is not None and second.sort == "word":
-        kind = _kind(f"{first.text} {second.text}")
+        kind = _kind(f"{first.plain} {second.plain}")
         if kind is not None:
             cursor.take()
             cursor.take()
             return kind
-    kind = _kind(first.text)
+    kind = _kind(first.plain)
     if kind is not None:
         cursor.take()
     return kind

@@ -217,7 +217,10 @@ class Session:
         return describe_section(chain.sections[self.selected], self.selected + 1, chain.sample_rate_hz)
 
     def _push(self, state: _State, gesture: int) -> None:
-        """Make a state the present one; edits of one gesture share one undo step."""
+        """Make a state the present one; edits of one gesture share one undo step, and no change is no step."""
+        if state.preset == self.preset:
+            self._state = replace(self._state, selected=state.selected)
+            return
         is_same_gesture = gesture != 0 and gesture == self._gesture and bool(self._past)
         if not is_same_gesture:
             self._past.append(self._state)

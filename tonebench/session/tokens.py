@@ -1,10 +1,11 @@
 """The words of a typed line: numbers with units, factors, words and quoted names.
 
-A decimal comma is a point; a minus sign of typography is a minus. Units may be attached or stand apart.
+A decimal comma is a point; a minus sign of typography is a minus. Units may be attached or stand apart. Names and
+reasons keep the text as it was typed.
 """
 
 import re
-from dataclasses import dataclass
+from dataclasses import dataclass, field, replace
 
 from tonebench.errors import TypedLineError
 
@@ -15,9 +16,9 @@ _UNITS = {
 _TOKEN = re.compile(
     r"""\s*(?:
       "(?P<quoted>[^"]*)"
-    | (?P<factor>[x*]\s*\d+(?:\.\d+)?(?:e[+-]?\d+)?)(?![\w])
-    | (?P<number>[+-]?(?:\d+\.?\d*|\.\d+)(?:e[+-]?\d+)?)(?P<unit>%|°|[a-zA-Z]+)?
-    | (?P<sign>[+-])(?=\s|$)
+    | (?P<factor>[x×*]\s*\d+(?:[.,]\d+)?(?:e[+\-−]?\d+)?)(?![\w])
+    | (?P<number>[+\-−]?(?:\d+(?:,\d+|\.\d*)?|\.\d+)(?:e[+\-−]?\d+)?)(?P<unit>%|°|[a-zA-Z]+)?
+    | (?P<sign>[+\-−])(?=\s|$)
     | (?P<word>[^\s"]+)
     )""",
     re.VERBOSE | re.IGNORECASE,
@@ -41,6 +42,8 @@ class Token:
         ``hz``, ``s``, ``db``, ``%``, ``deg``, ``oct``, ``cents``, ``samples`` or empty.
     is_signed : bool
         Typed with + or −.
+    is_attached : bool
+        No space stood between it and the token before.
 
     """
 
@@ -49,11 +52,12 @@ class Token:
     value: float = 0.0
     unit: str = ""
     is_signed: bool = False
+    is_attached: bool = field(default=False, compare=False)
 
     @property
     def plain(self) -> str:
-        """The text in lower case."""
-        return self.text.lower()
+        """The text in lower case, with a plain minus."""
+        return self.text.lower().replace("−", "-")
 
 
 def tokenize(line: str) -> list[Token]:
@@ -67,15 +71,13 @@ def tokenize(line: str) -> list[Token]:
     """
     if len(line) > _LONGEST_LINE:
         raise TypedLineError(f"a typed line must have at most {_LONGEST_LINE} characters, got {len(line)}")
-    text = line.replace("−", "-").replace("×", "x")
-    text = re.sub(r"(?<=\d),(?=\d)", ".", text)
     tokens: list[Token] = []
     position = 0
-    while position < len(text.rstrip()):
-        match = _TOKEN.match(text, position)
+    while position < len(line.rstrip()):
+        match = _TOKEN.match(line, position)
         if match is None:
             raise TypedLineError(f"a quote in {line.strip()!r} is not closed; put a second one at its end")
-        tokens.append(_token(match))
+        tokens.append(replace(_token(match), is_attached=position > 0 and not match[0][0].isspace()))
         position = match.end()
     return _with_units(tokens)
 
@@ -84,7 +86,7 @@ def _token(match: re.Match[str]) -> Token:
     if match["quoted"] is not None:
         return Token(match["quoted"], "quoted")
     if match["factor"] is not None:
-        return Token(match["factor"], "factor", float(match["factor"][1:].strip()))
+        return Token(match["factor"], "factor", _value(match["factor"][1:].strip()))
     if match["sign"] is not None:
         return Token(match["sign"], "sign")
     if match["number"] is None:
@@ -93,7 +95,11 @@ def _token(match: re.Match[str]) -> Token:
     text = match[0].strip()
     if unit and unit not in _UNITS:
         return Token(text, "word")
-    return _number(text, float(match["number"]), unit, is_signed=match["number"][0] in "+-")
+    return _number(text, _value(match["number"]), unit, is_signed=match["number"][0] in "+-−")
+
+
+def _value(text: str) -> float:
+    return float(text.replace(",", ".").replace("−", "-"))
 
 
 def _number(text: str, value: float, unit: str, *, is_signed: bool) -> Token:
@@ -111,7 +117,8 @@ def _with_units(tokens: list[Token]) -> list[Token]:
     for token in tokens:
         last = result[-1] if result else None
         if token.sort == "word" and token.plain in _UNITS and last and last.sort == "number" and not last.unit:
-            result[-1] = _number(f"{last.text} {token.text}", last.value, token.plain, is_signed=last.is_signed)
+            joined = _number(f"{last.text} {token.text}", last.value, token.plain, is_signed=last.is_signed)
+            result[-1] = replace(joined, is_attached=last.is_attached)
         else:
             result.append(token)
     return result
@@ -164,10 +171,10 @@ class Cursor:
         return self.take()
 
     def rest(self) -> str:
-        """Read everything that is left as one text."""
-        words = [token.text for token in self._tokens[self._position :]]
+        """Read everything that is left as one text, as it was typed but for quotes and runs of spaces."""
+        words = [f"{'' if token.is_attached else ' '}{token.text}" for token in self._tokens[self._position :]]
         self._position = len(self._tokens)
-        return " ".join(words)
+        return "".join(words).strip()
 
 
 def _unit_word(unit: str) -> str:

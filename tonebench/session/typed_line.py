@@ -112,7 +112,7 @@ def _take_sections(chain: Chain, selected: int, cursor: Cursor) -> list[int]:
     token = cursor.peek()
     if token is None:
         raise TypedLineError("the line is empty")
-    named = [index for index, one in enumerate(chain.sections) if one.name and one.name.lower() == token.plain]
+    named = [index for index, one in enumerate(chain.sections) if one.name and one.name.lower() == token.text.lower()]
     is_word_of_grammar = token.sort == "word" and token.plain in (*EDIT_WORDS, *_STRUCTURE_WORDS)
     if named and not is_word_of_grammar:
         cursor.take()
