@@ -94,7 +94,17 @@ def _solve(made: ByKind, sample_rate_hz: float, radius: float, angle_rad: float)
     by_q = replace(
         made, frequency_hz=frequency_hz, width=Width(WidthKey.Q, pole_q / pole_q_ratio(made.kind, amplitude))
     )
-    return replace(by_q, width=Width(key, all_widths(by_q, sample_rate_hz)[key]))
+    kept = replace(by_q, width=Width(key, all_widths(by_q, sample_rate_hz)[key]))
+    return kept if _has_pole(kept, sample_rate_hz, radius) else by_q
+
+
+def _has_pole(made: ByKind, sample_rate_hz: float, radius: float) -> bool:
+    """Tell whether the kept width leads back to the pole: far from the rim two poles may have the same octaves."""
+    try:
+        poles = realise(Section(made), sample_rate_hz).poles
+    except InvalidValueError:
+        return False
+    return isinstance(poles, ConjugatePair) and abs(poles.radius - radius) < 1e-9
 
 
 def _moved_by_numbers(section: Section, made: ByKind, sample_rate_hz: float, move: Move) -> Section:

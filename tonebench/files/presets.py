@@ -8,8 +8,8 @@ from tonebench.core.hearing import differences
 from tonebench.errors import PresetError, StorageError
 from tonebench.files.atomic import write_text_atomically
 from tonebench.files.caution import rounded_hearing
-from tonebench.files.names import complaint_about_name
 from tonebench.files.reading import read_preset
+from tonebench.session.names import complaint_about_name
 from tonebench.session.preset import Preset
 
 LARGEST_BYTES = 1_000_000  # 128 sections with long comments are 100 kB

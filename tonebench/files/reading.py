@@ -3,6 +3,7 @@
 import contextlib
 import difflib
 import math
+import re
 from collections.abc import Callable, Mapping
 from decimal import Decimal
 from typing import Any, NoReturn
@@ -20,9 +21,9 @@ from tonebench.files.keys import (
     WIDTH_KEYS,
     angle_from_degrees,
 )
-from tonebench.files.names import check_name, check_prefix
 from tonebench.files.segments import Segment, split_segments
 from tonebench.files.toml_text import toml_values
+from tonebench.session.names import complaint_about_name
 from tonebench.session.preset import FORMAT_VERSION, Acceptance, ExportRequest, Preset
 from tonebench.target.arithmetic import Overflow, Products, Rounding, Target, parse_format, parse_target
 
@@ -83,6 +84,12 @@ class Reader:
         if value is not default and not isinstance(value, str):
             self.refuse(key, must_be(key, "a text in quotes", _shown(value)))
         return value
+
+    def name(self, name: str) -> str:
+        """Return a name, or refuse it."""
+        if complaint := complaint_about_name(name):
+            self.refuse("name", complaint)
+        return name
 
     def attempt(self, key: str, make: Callable[[], Any]) -> Any:
         """Run a constructor; if it refuses, name the key that its message starts with, or else this one."""
@@ -176,7 +183,7 @@ def _chain(table: Reader, sections: list[Reader]) -> Chain:
             "section",
             must_be("the number of sections", f"at most {LARGEST_SECTION_COUNT}", len(sections), "leave some out"),
         )
-    name = check_name(table, "name", table.text("name"))
+    name = table.name(table.text("name"))
     rate_hz = table.number("sample_rate_hz")
     combine = table.text("combine", "series")
     gain_db = table.number("gain_db", 0.0)
@@ -198,7 +205,7 @@ def _check_at_rate(table: Reader, section: Section, rate_hz: float) -> None:
 def _section(table: Reader) -> Section:
     kind: Kind = table.attempt("kind", lambda: parse_kind(table.text("kind")))
     made = _by_hand(table) if kind is Kind.FREE else _by_kind(table, kind)
-    name = check_name(table, "name", table.text("name", ""))
+    name = table.name(table.text("name", ""))
     polarity = table.whole("polarity", 1)
     delay = table.whole("delay", 0)
     is_bypassed = table.flag("bypass")
@@ -316,10 +323,17 @@ def _target(table: Reader) -> Target:
 
 
 def _export(table: Reader) -> ExportRequest:
-    prefix = check_prefix(table, "prefix", table.text("prefix", ""))
+    prefix = _checked_prefix(table, table.text("prefix", ""))
     to, file = table.text("to"), table.text("file")
     request: ExportRequest = table.attempt("file", lambda: ExportRequest(to, file, prefix))
     return request
+
+
+def _checked_prefix(table: Reader, prefix: str) -> str:
+    if prefix and not re.fullmatch(r"[A-Za-z][A-Za-z0-9_]{0,40}", prefix):
+        rule = "a C identifier: a letter, then letters, digits and _, at most 41"
+        table.refuse("prefix", must_be("prefix", rule, prefix))
+    return prefix
 
 
 def _acceptance(table: Reader) -> Acceptance:

@@ -17,6 +17,7 @@ SHORTEST_FRAMES = 256
 # 12.6 dB for the 2^18 bins of the longest part. What stands higher is no accident of noise.
 STANDS_OUT_DB = 14.0
 WITHIN_DB = 70.0  # of the strongest: what lies deeper is a skirt or a trace that nobody means (judgement)
+FARTHEST_OCTAVES = 1.0  # a pole that jumps farther was not meant (judgement)
 _LOBE_BINS = 4  # the Blackman–Harris window's main lobe reaches four bins to each side
 _AROUND_OCTAVES = 0.25
 _FLOOR_SLACK_DB = 3.0  # the surroundings of a bin cover parts of cells, whose medians scatter
@@ -57,7 +58,7 @@ def nearest_peak(samples: NDArray[np.floating], sample_rate_hz: float, near_hz: 
     -------
     Peak or None
         None where nothing within ``WITHIN_DB`` of the strongest stands out by ``STANDS_OUT_DB``, or the part is
-        shorter than ``SHORTEST_FRAMES``.
+        shorter than ``SHORTEST_FRAMES``; nor from farther away than ``FARTHEST_OCTAVES``.
 
     """
     mono = np.asarray(samples, dtype=np.float64)
@@ -73,6 +74,8 @@ def nearest_peak(samples: NDArray[np.floating], sample_rate_hz: float, near_hz: 
     step_hz = sample_rate_hz / mono.size
     lowest_db = max(float(level_db.max()) - WITHIN_DB, 20.0 * math.log10(_SILENCE) + STANDS_OUT_DB)
     for bin_number in _candidates(level_db, near_hz / step_hz, lowest_db):
+        if abs(math.log2(bin_number * step_hz / near_hz)) > FARTHEST_OCTAVES:
+            return None  # they come nearest first
         if level_db[bin_number] - _around_db(level_db, bin_number) >= STANDS_OUT_DB:
             frequency_hz, amplitude = _refined(windowed, sample_rate_hz, bin_number)
             level = 20.0 * math.log10(max(amplitude * scale, _SILENCE))

@@ -4,6 +4,7 @@ from dataclasses import replace
 
 from tonebench.core.rates import at_rate
 from tonebench.errors import TypedLineError
+from tonebench.session.names import checked_name
 from tonebench.session.preset import Acceptance, Preset
 from tonebench.session.tokens import Cursor
 from tonebench.target.arithmetic import parse_target
@@ -30,7 +31,7 @@ def change_chain(preset: Preset, cursor: Cursor) -> tuple[Preset, str]:
         changed = replace(chain, direct_gain_db=level)
         sentence = "the input itself is not added" if level is None else f"the input itself is added at {level:+g} dB"
     elif word == "name":
-        changed = replace(chain, name=cursor.rest())
+        changed = replace(chain, name=checked_name(cursor.rest()))
         sentence = f"chain named {changed.name}"
     elif word == "rate":
         change = at_rate(chain, cursor.number("chain rate", "hz", "").value)

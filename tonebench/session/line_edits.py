@@ -15,6 +15,7 @@ from tonebench.core.shape import Move, move_pole, set_pole
 from tonebench.core.widths import all_widths
 from tonebench.errors import TypedLineError
 from tonebench.session.line_sections import WIDTH_WORDS, read_roots, read_width, take_kind
+from tonebench.session.names import checked_name
 from tonebench.session.tokens import Cursor, Token
 
 Edit = Callable[[Section, float], Section]
@@ -194,7 +195,7 @@ def _read_zeros(cursor: Cursor) -> Edit:
 
 
 def _read_name(cursor: Cursor) -> Edit:
-    name = cursor.rest()
+    name = checked_name(cursor.rest())
     return lambda section, _: replace(section, name=name)
 
 

@@ -1,13 +1,8 @@
 """What a name in a preset may hold: one line that cannot end a string or a comment of any exported language."""
 
-import re
 import unicodedata
-from typing import TYPE_CHECKING
 
-from tonebench.errors import must_be
-
-if TYPE_CHECKING:
-    from tonebench.files.reading import Reader
+from tonebench.errors import InvalidValueError, must_be
 
 LONGEST_NAME = 80
 
@@ -25,16 +20,16 @@ def complaint_about_name(name: str) -> str:
     return ""
 
 
-def check_name(table: "Reader", key: str, name: str) -> str:
-    """Return the name, or refuse it with its line."""
+def checked_name(name: str) -> str:
+    """Return the name, or refuse it.
+
+    Raises
+    ------
+    InvalidValueError
+        With what is wrong with it.
+
+    """
     complaint = complaint_about_name(name)
     if complaint:
-        table.refuse(key, complaint)
+        raise InvalidValueError(complaint)
     return name
-
-
-def check_prefix(table: "Reader", key: str, prefix: str) -> str:
-    """Return an export's prefix, or refuse it with its line."""
-    if prefix and not re.fullmatch(r"[A-Za-z][A-Za-z0-9_]{0,40}", prefix):
-        table.refuse(key, must_be(key, "a C identifier: a letter, then letters, digits and _, at most 41", prefix))
-    return prefix
