@@ -2,8 +2,11 @@
 
 import numpy as np
 import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
 from numpy.typing import NDArray
 
+from tests import strategies
 from tonebench.core.chain import Chain
 from tonebench.core.coefficients import from_chain
 from tonebench.core.kinds import Kind
@@ -174,3 +177,17 @@ def test_rearm_of_an_idle_guard_changes_nothing() -> None:
         _play(player, 4096)
     armed.rearm()
     assert np.array_equal(_play(armed, 4096), _play(alone, 4096))
+
+
+@settings(max_examples=60, deadline=None)
+@given(strategies.chains(largest_pole_radius=1.2), strategies.chains(largest_pole_radius=1.2), st.floats(-24.0, 0.0))
+def test_every_random_chain_stays_under_the_ceiling(first: Chain, second: Chain, ceiling_db: float) -> None:
+    """Unstable ones and huge gains included, at full level on full-scale noise, with an edit on the way."""
+    clip = np.random.default_rng(9).uniform(-1.0, 1.0, (4800, 1)).astype(np.float32)
+    player = _player(clip, first)
+    player.guard.set_ceiling_db(ceiling_db)
+    heard = _play(player, 6000)
+    player.pending_kernel = Kernel(from_chain(second), 1)
+    heard = np.concatenate([heard, _play(player, 6000)])
+    assert np.isfinite(heard).all()
+    assert float(np.abs(heard).max()) <= 10.0 ** (ceiling_db / 20.0)

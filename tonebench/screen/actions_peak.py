@@ -41,7 +41,7 @@ class PeakActions(LookActions):
 
     @staticmethod
     def _put(bench: "Bench", peak: "Peak") -> str:
-        bench.put_frequency(peak.frequency_hz)
+        bench.put_frequency(round(peak.frequency_hz, 4))  # finer than any clip tells
         return (
             f"section {bench.session.selected + 1} on the peak: {peak.frequency_hz:.3f} Hz, "
             f"{peak.level_dbfs:.1f} dBFS, {peak.height_db:.1f} dB over its surroundings"
